@@ -1,0 +1,117 @@
+"""A set of building blocks, with the fate of every input row.
+
+The books balance: rows in = blocks + duplicates + rejected.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from libtool.blocks.columns import Columns
+from libtool.errors import InputError
+from libtool.records import BuildingBlock, RowIssue
+
+if TYPE_CHECKING:
+    import pandas
+
+__all__ = ["BlockSet"]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class BlockSet:
+    """The blocks of one list and the rows that did not become one.
+
+    Parameters
+    ----------
+    name : str
+        Name of the file.
+    sha256 : str
+        Hash of the input.
+    columns : Columns
+        Which columns were taken as structure, id and name.
+    column_names : tuple of str
+        All columns of the input, in order.
+    blocks : tuple of BuildingBlock
+    duplicates : tuple of RowIssue
+        Rows whose parent is already there under another row.
+    rejected : tuple of RowIssue
+        Rows without a usable structure.
+    """
+
+    name: str
+    sha256: str
+    columns: Columns
+    column_names: tuple[str, ...]
+    blocks: tuple[BuildingBlock, ...]
+    duplicates: tuple[RowIssue, ...]
+    rejected: tuple[RowIssue, ...]
+
+    def __len__(self) -> int:
+        """Count the usable blocks."""
+        return len(self.blocks)
+
+    def __iter__(self) -> Iterator[BuildingBlock]:
+        """Iterate over the usable blocks in file order."""
+        return iter(self.blocks)
+
+    def __getitem__(self, block_id: str) -> BuildingBlock:
+        """Block with this id.
+
+        Raises
+        ------
+        InputError
+            There is none.
+        """
+        for block in self.blocks:
+            if block.id == block_id:
+                return block
+        raise InputError(f"{self.name}: there is no block with id {block_id!r} among {len(self)} usable ones.")
+
+    @property
+    def rows_in(self) -> int:
+        """How many rows the input had."""
+        return len(self.blocks) + len(self.duplicates) + len(self.rejected)
+
+    def summary(self) -> str:
+        """One sentence that balances the books."""
+        return (
+            f"{self.name}: {self.rows_in} rows = {len(self.blocks)} blocks "
+            f"+ {len(self.duplicates)} duplicates + {len(self.rejected)} rejected"
+        )
+
+    def frame(self) -> pandas.DataFrame:
+        """Blocks as a table.
+
+        Returns
+        -------
+        pandas.DataFrame
+            Columns id, name, smiles (parent), counterions (dot-separated
+            SMILES), row, received; one row a block.
+        """
+        import pandas
+
+        return pandas.DataFrame(
+            [(b.id, b.name, b.smiles, ".".join(b.counterions), b.row, b.received) for b in self.blocks],
+            columns=["id", "name", "smiles", "counterions", "row", "received"],
+        )
+
+    @property
+    def issues(self) -> pandas.DataFrame:
+        """Duplicates and rejected rows as a table.
+
+        Returns
+        -------
+        pandas.DataFrame
+            Columns row, outcome ("duplicate" or "rejected"), column,
+            received, reason, remedy; in the order of the input.
+        """
+        import pandas
+
+        found = [("duplicate", i) for i in self.duplicates] + [("rejected", i) for i in self.rejected]
+        found.sort(key=lambda pair: pair[1].row)
+        return pandas.DataFrame(
+            [(i.row, outcome, i.column, i.received, i.reason, i.remedy) for outcome, i in found],
+            columns=["row", "outcome", "column", "received", "reason", "remedy"],
+        )
