@@ -178,8 +178,9 @@ def _measure(shapes: Shapes, conformer: int, carbon: int, leaving: int, referenc
     back = _back_side(mol, mol.GetConformer(conformer).GetPositions(), carbon, leaving)
     closed = back.cone_overlaps > reference.overlap_ang
     open_fraction = float(1.0 - closed.any(axis=1).mean())
-    crowded = open_fraction < reference.open_fraction
+    crowded = open_fraction < number(row("approach_terms", "as_open_as")) * reference.open_fraction
     closing = number(row("approach_terms", "closing_share"))
+    deeper = reference.overlap_ang + number(row("approach_terms", "overlap_tolerance"))
     intruders = [
         Intruder(
             atom=atom,
@@ -189,7 +190,7 @@ def _measure(shapes: Shapes, conformer: int, carbon: int, leaving: int, referenc
             cone_share=float(closed[:, k].mean()),
         )
         for k, atom in enumerate(back.watched)
-        if back.overlaps[k] > reference.overlap_ang or (crowded and closed[:, k].mean() >= closing)
+        if back.overlaps[k] > deeper or (crowded and closed[:, k].mean() >= closing)
     ]
     return ConformerApproach(
         conformer=conformer,

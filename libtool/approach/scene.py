@@ -100,10 +100,8 @@ def describe(approach: Approach, shown: ConformerApproach) -> str:
     """What the picture shows, in two sentences."""
     label = row("carbon_patterns", approach.site.carbon_class)["label"]
     start = f"Back side of {approach.site.block.id}, carbon C{approach.site.carbon + 1} ({label}): "
-    share = (
-        f"{shown.open_fraction:.0%} of the approach cone is open"
-        f" (ethyl bromide {approach.reference_open_fraction:.0%})."
-    )
+    reference = f"{approach.reference_open_fraction:.0%}"
+    share = f"{shown.open_fraction:.0%} of the approach cone is open (ethyl bromide {reference})."
     if not shown.intruders:
         return f"{start}nothing stands in the nucleophile's way. {share}"
     groups = [f"{name} ({overlap:.1f} Å)" for name, overlap in _groups(shown.intruders)]

@@ -24,22 +24,16 @@ function unpack(gzipped) {
   return new Response(stream).text();
 }
 
-// The library registers itself with an AMD loader if it sees one; hide that for
-// the time of the call so that it always ends up on window.
+// The library hands itself to an AMD or CommonJS loader if it sees one, and then
+// never reaches window. The wrapper hides both without touching the page's own.
 function runScript(text) {
-  const kept = window.define;
-  window.define = undefined;
+  const wrapped = ["(function (define, exports, module) {", text, "}).call(window);"].join("\n");
+  const url = URL.createObjectURL(new Blob([wrapped], { type: "text/javascript" }));
   return new Promise((resolve, reject) => {
-    const url = URL.createObjectURL(new Blob([text], { type: "text/javascript" }));
     const tag = document.createElement("script");
-    const settle = (then) => () => {
-      window.define = kept;
-      URL.revokeObjectURL(url);
-      then();
-    };
-    tag.onload = settle(resolve);
-    tag.onerror = settle(() => reject(new Error("3Dmol.js could not be started")));
+    tag.onload = () => resolve();
+    tag.onerror = () => reject(new Error("the page does not allow the script to run"));
     tag.src = url;
     document.head.appendChild(tag);
-  });
+  }).finally(() => URL.revokeObjectURL(url));
 }

@@ -5,9 +5,9 @@ replaced by a dummy atom, and everything said about the carbon (its class, its
 branches, its neighbours) is read off that stripped molecule with
 `carbon_patterns.csv`: a bromide and its mesylate are one carbon.
 
-Poor leaving groups (alcohol, ether, ester, fluoride, ammonium) and sp2 carbons
-count only when the block has nothing better, so that a bottle listed by
-mistake is named and flagged instead of being overlooked.
+Poor leaving groups (alcohol, ester, ammonium, then ether and fluoride) and sp2
+carbons count only when the block has nothing better, so that a bottle listed
+by mistake is named and flagged instead of being overlooked.
 """
 
 from __future__ import annotations
@@ -25,6 +25,9 @@ __all__ = ["carbon_atoms", "carbon_modifiers", "electrophile_sites", "leaving_gr
 # A hydrogen counts for nothing here; carbons that activate the C-X bond win
 # over plain ones when one molecule carries two equal leaving groups.
 _BLOCKED_PENALTY = -6.0
+# Ethers and C-F bonds are parts of a scaffold: in 4-bromoanisole the bromide is
+# what somebody meant, in 4-bromobenzyl alcohol the hydroxyl.
+_SCAFFOLD_GROUPS = frozenset({"OR", "F"})
 
 
 def electrophile_sites(block: BuildingBlock) -> tuple[ElectrophileSite, ...]:
@@ -49,8 +52,9 @@ def electrophile_sites(block: BuildingBlock) -> tuple[ElectrophileSite, ...]:
             found[key] = site
     sites = list(found.values())
     good = [s for s in sites if s.good_leaving_group and _is_sp3(s)]
-    sp3 = [s for s in sites if _is_sp3(s)]
-    chosen = good or sp3 or sites
+    meant = [s for s in sites if _is_sp3(s) and s.leaving_group not in _SCAFFOLD_GROUPS]
+    sp2 = [s for s in sites if s.good_leaving_group]
+    chosen = good or meant or sp2 or sites
     return tuple(sorted(chosen, key=lambda s: (-s.log10_odds, s.carbon)))
 
 

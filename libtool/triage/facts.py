@@ -10,19 +10,22 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import cache
 
 from rdkit import Chem
 
 from libtool.reaction.electrophiles import leaving_group_carbons
 from libtool.reaction.nucleophiles import nucleophile_sites, site_label
 from libtool.records import BuildingBlock, ElectrophileSite, NucleophileSite, RateEstimate, Role
-from libtool.reference.tables import number, row
+from libtool.reference.tables import number, row, table
 
 __all__ = ["ELECTROPHILE_FACTS", "NUCLEOPHILE_FACTS", "PAIR_FACTS", "Finding"]
 
 # Two sites whose odds differ less than this give a mixture worth a word:
 # 10:1, what a chemist sees at once in a crude NMR.
 _COMPETING_ODDS = 1.0
+# Isomers of one ring are hard to separate: named down to about 3 %.
+_MINOR_ISOMER_ODDS = 1.5
 # Classes at and above aniline react with an electrophile of the same molecule.
 _SELF_REACTIVE_KINDS_FLOOR = "aniline"
 
@@ -92,7 +95,7 @@ def poor_leaving_group(block: BuildingBlock, site: ElectrophileSite | None) -> F
         site.leaving_atoms[0],
         leaving=group["label"][0].upper() + group["label"][1:],
         power=f"{-number(term, 'log10'):.0f}",
-        limit=" or more" if "upper bound" in term["note"] else "",
+        about="at least" if "upper bound" in term["note"] else "about",
         pka=f"pKa {acid['value']} ({acid['compound']}) against {bromide['value']} ({bromide['compound']})",
     )
 
@@ -143,6 +146,15 @@ def self_reactive(block: BuildingBlock, site: ElectrophileSite | None) -> Findin
     return _on_electrophile(own[0].atom, site.carbon, site=site_label(own[0])) if own else None
 
 
+_ACYLATING = Chem.MolFromSmarts("[$([CX3](=O)[Cl,Br,I]),$(S(=O)(=O)[Cl,Br]),$(N=C=[O,S])]")
+
+
+def acylating_group(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
+    """Acyl or sulfonyl halide or isocyanate, which reacts before any alkyl halide."""
+    matches = block.mol.GetSubstructMatches(_ACYLATING)
+    return _on_electrophile(*(m[0] for m in matches)) if matches else None
+
+
 def no_electrophilic_site(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
     """Nothing that leaves."""
     return None if site else _on_electrophile()
@@ -153,14 +165,31 @@ def no_electrophilic_site(block: BuildingBlock, site: ElectrophileSite | None) -
 
 def acid_salt(block: BuildingBlock, sites: Sequence[NucleophileSite]) -> Finding | None:
     """Counter-ions that carry an acidic proton for the base."""
-    acids = [c for c in block.counterions if _is_acid(c)]
+    words = _salt_words(block)
+    return _on_nucleophile(**words) if words else None
+
+
+def electrophile_salt(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
+    """The same for an electrophile, for instance a basic one sold as hydrochloride."""
+    words = _salt_words(block)
+    return _on_electrophile(**words) if words else None
+
+
+def _salt_words(block: BuildingBlock) -> dict[str, str]:
+    acids = [c for c in block.counterions if _protons(c)]
     if not acids:
-        return None
-    return _on_nucleophile(salt=" and ".join(sorted(set(acids))), equivalents=str(sum(map(_protons, acids))))
+        return {}
+    names = sorted({_counterion_names().get(_canonical(a), a) for a in acids})
+    return {"salt": " and ".join(names), "equivalents": str(sum(map(_protons, acids)))}
 
 
-def _is_acid(smiles: str) -> bool:
-    return _protons(smiles) > 0
+def _canonical(smiles: str) -> str:
+    return str(Chem.MolToSmiles(Chem.MolFromSmiles(smiles)))
+
+
+@cache
+def _counterion_names() -> dict[str, str]:
+    return {_canonical(r["smiles"]): r["key"].replace("_", " ") for r in table("counterions")}
 
 
 _ACID_PROTON = Chem.MolFromSmarts(
@@ -210,7 +239,7 @@ def _ring_partner(site: NucleophileSite) -> int:
 def regioisomers(block: BuildingBlock, sites: Sequence[NucleophileSite]) -> Finding | None:
     """Two nitrogens of one azole with similar odds."""
     pairs = [s for s in sites[1:] if _same_ring(sites[0], s) and s.form.GetAtomWithIdx(s.atom).GetIsAromatic()]
-    close = [s for s in pairs if sites[0].log10_odds - s.log10_odds < _COMPETING_ODDS]
+    close = [s for s in pairs if sites[0].log10_odds - s.log10_odds < _MINOR_ISOMER_ODDS]
     if not close or not sites[0].form.GetAtomWithIdx(sites[0].atom).GetIsAromatic():
         return None
     return _on_nucleophile(
@@ -312,7 +341,7 @@ def _named(*functions: Callable[..., Finding | None]) -> dict[str, Callable[...,
 
 ELECTROPHILE_FACTS: Mapping[str, ElectrophileFact] = _named(
     beta_branches, bridgehead, outside_cage, poor_leaving_group, unactivated_chloride, several_leaving_groups,
-    defined_stereocentre, racemisable, self_reactive, no_electrophilic_site,
+    acylating_group, electrophile_salt, defined_stereocentre, racemisable, self_reactive, no_electrophilic_site,
 )  # fmt: skip
 NUCLEOPHILE_FACTS: Mapping[str, NucleophileFact] = _named(
     acid_salt, no_nucleophilic_site, several_nucleophilic_sites, regioisomers, nitrogen_or_oxygen

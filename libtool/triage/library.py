@@ -293,8 +293,7 @@ def _verdict(flags: tuple[Flag, ...], hazards: tuple[Hazard, ...]) -> Verdict:
     levels = {f.level for f in flags}
     if Level.FAIL in levels:
         return Verdict.STUCK
-    cautious = level in {HazardLevel.COMPLIANCE, HazardLevel.HIGH}
-    return Verdict.WATCH if Level.WARN in levels or cautious else Verdict.GO
+    return Verdict.WATCH if Level.WARN in levels or level is HazardLevel.COMPLIANCE else Verdict.GO
 
 
 def _suggest(verdict: Verdict, flags: tuple[Flag, ...], hazards: tuple[Hazard, ...], e: Reagent) -> tuple[Choice, str]:
@@ -308,7 +307,6 @@ def _suggest(verdict: Verdict, flags: tuple[Flag, ...], hazards: tuple[Hazard, .
     if strictest(hazards) is HazardLevel.COMPLIANCE:
         return Choice.PARK, f"approval needed: {hazards[0].what}"
     warnings = [f.title for f in flags if f.level is Level.WARN]
-    warnings += [h.what for h in hazards if h.level is HazardLevel.HIGH]
     return Choice.MAKE, "; ".join(warnings) or "no flag"
 
 
