@@ -83,7 +83,7 @@ def scene(approach: Approach, *, conformer: int | None = None, marked: Iterable[
     calls += _spheres(shown, carbon)
     calls += _path(positions, leaving)
     calls += _labels(mol, shown, positions)
-    calls += [("zoomTo", ({"index": sorted(near)},)), ("zoom", (0.85,))]
+    calls += [("zoomTo", ({"index": sorted(near)},)), ("zoom", (1.1,))]
     return Scene(calls=tuple(calls), sentence=describe(approach, shown))
 
 

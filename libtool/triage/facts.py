@@ -21,6 +21,7 @@ from libtool.reference.tables import number, row, table
 
 __all__ = ["ELECTROPHILE_FACTS", "NUCLEOPHILE_FACTS", "PAIR_FACTS", "Finding"]
 
+_SUPERSCRIPT = str.maketrans("0123456789", "⁰¹²³⁴⁵⁶⁷⁸⁹")
 # Two sites whose odds differ less than this give a mixture worth a word:
 # 10:1, what a chemist sees at once in a crude NMR.
 _COMPETING_ODDS = 1.0
@@ -94,7 +95,7 @@ def poor_leaving_group(block: BuildingBlock, site: ElectrophileSite | None) -> F
         site.carbon,
         site.leaving_atoms[0],
         leaving=group["label"][0].upper() + group["label"][1:],
-        power=f"{-number(term, 'log10'):.0f}",
+        power=f"{-number(term, 'log10'):.0f}".translate(_SUPERSCRIPT),
         about="at least" if "upper bound" in term["note"] else "about",
         pka=f"pKa {acid['value']} ({acid['compound']}) against {bromide['value']} ({bromide['compound']})",
     )
@@ -332,7 +333,9 @@ def predicted_too_slow(n: NucleophileSite, e: ElectrophileSite, rate: RateEstima
     """Predicted rate below anything a plate waits for, where a number can be given."""
     if rate is None or rate.log10_k_rel > _TOO_SLOW:
         return None
-    return _on_electrophile(e.carbon, log10=f"{rate.log10_k_rel:.1f}".replace("-", "\u2212"))
+    # One significant figure: the estimate is no better.
+    times = float(f"{10**-rate.log10_k_rel:.0e}")
+    return _on_electrophile(e.carbon, times=f"{times:,.0f}", reference=rate.reference)
 
 
 def _named(*functions: Callable[..., Finding | None]) -> dict[str, Callable[..., Finding | None]]:

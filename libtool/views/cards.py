@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from libtool.triage.library import Pair
     from libtool.triage.session import Session
 
-__all__ = ["block_title", "caution", "counts_line", "message", "pair_card"]
+__all__ = ["block_title", "caution", "counts_line", "message", "pair_head", "pair_reasons"]
 
 _TONES = {
     Verdict.GO: "#16786a",
@@ -70,8 +70,8 @@ def counts_line(session: Session, wells: int) -> str:
     return f"<b>{escape(text)}</b>"
 
 
-def pair_card(pair: Pair, decision: Decision | None) -> str:
-    """Everything about one pair.
+def pair_head(pair: Pair, decision: Decision | None) -> str:
+    """Who reacts with whom, what comes out, and what holds.
 
     Parameters
     ----------
@@ -90,11 +90,14 @@ def pair_card(pair: Pair, decision: Decision | None) -> str:
         f"<div>{escape(_holds(pair, decision))}</div>",
         _scheme(pair),
         _outcome(pair),
-        _flags(pair.flags),
-        _hazards(pair.hazards),
-        _estimate(pair.rate),
     ]
     return f'<div style="line-height:1.35">{"".join(parts)}</div>'
+
+
+def pair_reasons(pair: Pair) -> str:
+    """Flags with remedies and sources, cautions, estimated rate; as HTML."""
+    parts = _flags(pair.flags) + _hazards(pair.hazards) + _estimate(pair.rate)
+    return f'<div style="line-height:1.35">{parts}</div>'
 
 
 def _holds(pair: Pair, decision: Decision | None) -> str:
@@ -168,7 +171,7 @@ def _hazards(hazards: tuple[Hazard, ...]) -> str:
     text = f'<ul style="margin:4px 0;padding-left:18px">{"".join(lines)}</ul>' if lines else ""
     if quiet:
         inside = "".join(f"<li>{escape(h.what)}. {escape(h.action)}.</li>" for h in quiet)
-        text += f"<details><summary>{len(quiet)} general cautions</summary><ul>{inside}</ul></details>"
+        text += f"<details><summary>General caution{'s' * (len(quiet) > 1)}</summary><ul>{inside}</ul></details>"
     return text
 
 

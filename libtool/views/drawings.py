@@ -22,7 +22,7 @@ _FLAGGED: _Colour = (0.99, 0.80, 0.55)
 
 
 def block_svg(
-    block: BuildingBlock, *, reacting: Iterable[int], flagged: Iterable[int] = (), width: int = 190, height: int = 130
+    block: BuildingBlock, *, reacting: Iterable[int], flagged: Iterable[int] = (), width: int = 150, height: int = 105
 ) -> str:
     """Drawing of a block.
 
@@ -37,13 +37,17 @@ def block_svg(
     Returns
     -------
     str
-        One <svg> element, on white.
+        One <svg> element, on white; marked atoms carry their number, from 1.
     """
     colours = dict.fromkeys(reacting, _REACTING) | dict.fromkeys(flagged, _FLAGGED)
-    return _svg(block.mol, colours, width, height)
+    mol = Chem.Mol(block.mol)
+    # Sentences and pictures name atoms by these numbers.
+    for index in colours:
+        mol.GetAtomWithIdx(index).SetProp("atomNote", str(index + 1))
+    return _svg(mol, colours, width, height)
 
 
-def product_svg(product: Product, *, width: int = 230, height: int = 130) -> str:
+def product_svg(product: Product, *, width: int = 200, height: int = 105) -> str:
     """Drawing of a product with the new bond on blue ground, see `block_svg`."""
     try:
         mol = join(product.nucleophile, product.electrophile)
@@ -58,10 +62,10 @@ def _svg(mol: Chem.Mol, colours: dict[int, _Colour], width: int, height: int) ->
     drawer = rdMolDraw2D.MolDraw2DSVG(width, height)
     options = drawer.drawOptions()
     # The stubs of RDKit 2026.9 give the settings the type of their owner.
-    options.fixedBondLength = 26  # type: ignore[assignment]
+    options.fixedBondLength = 22  # type: ignore[assignment]
     options.padding = 0.08  # type: ignore[assignment]
     drawn = rdMolDraw2D.PrepareMolForDrawing(Chem.Mol(mol), kekulize=True)
-    marked = sorted(i for i in colours if i < drawn.GetNumAtoms())
+    marked = sorted(colours)
     bonds = [b.GetIdx() for b in drawn.GetBonds() if b.GetBeginAtomIdx() in colours and b.GetEndAtomIdx() in colours]
     drawer.DrawMolecule(
         drawn,

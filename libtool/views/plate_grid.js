@@ -1,9 +1,11 @@
 // Wells as SVG: one glyph per pair. All text goes in as text nodes.
 
 const SVG = "http://www.w3.org/2000/svg";
-const STEP = 26;
+const WIDE = 26;
+const NARROW = 22;
+const MANY_COLUMNS = 16;
 const LONGEST_NAME = 16;
-const LETTER = 6.2;
+const LETTER = 7;
 
 function make(tag, attributes = {}, ...children) {
   const node = document.createElementNS(SVG, tag);
@@ -53,25 +55,26 @@ function render({ model, el }) {
   const build = () => {
     const rows = model.get("_row_names");
     const columns = model.get("_column_names");
+    const step = columns.length > MANY_COLUMNS ? NARROW : WIDE;
     const longest = (names) => Math.max(1, ...names.map((name) => shortened(name).length));
     const left = longest(rows) * LETTER + 12;
     // Column names lean back by 60 degrees.
     const lean = longest(columns) > 3;
     const top = lean ? longest(columns) * LETTER * 0.87 + 14 : 20;
     const overhang = lean ? longest(columns) * LETTER * 0.5 : 0;
-    const width = left + columns.length * STEP + overhang + 4;
-    const height = top + rows.length * STEP + 4;
+    const width = left + columns.length * step + overhang + 4;
+    const height = top + rows.length * step + 4;
     svg.setAttribute("width", width);
     svg.setAttribute("height", height);
     svg.setAttribute("viewBox", `0 0 ${width} ${height}`);
     svg.setAttribute("aria-label", model.get("name"));
     svg.replaceChildren();
     rows.forEach((name, i) => {
-      const y = top + (i + 0.5) * STEP + 4;
+      const y = top + (i + 0.5) * step + 4;
       svg.append(label(name, { x: left - 8, y, "text-anchor": "end" }, () => markLine((c) => c[0] === i)));
     });
     columns.forEach((name, j) => {
-      const x = left + (j + 0.5) * STEP;
+      const x = left + (j + 0.5) * step;
       const place = lean
         ? { transform: `translate(${x + 3} ${top - 6}) rotate(-60)` }
         : { x, y: top - 6, "text-anchor": "middle" };
@@ -79,21 +82,21 @@ function render({ model, el }) {
     });
     wells = new Map();
     for (const [row, column, verdict, choice, decided, words] of model.get("_cells")) {
-      const x = left + column * STEP;
-      const y = top + row * STEP;
+      const x = left + column * step;
+      const y = top + row * step;
       const group = make("g", {
         class: "well", role: "gridcell", id: `${prefix}-${row}-${column}`, "aria-label": words,
         "data-row": row, "data-column": column, transform: `translate(${x} ${y})`,
       });
-      group.append(make("title", {}, words), make("rect", { class: "hit", x: 1, y: 1, width: STEP - 2, height: STEP - 2, rx: 4 }));
+      group.append(make("title", {}, words), make("rect", { class: "hit", x: 1, y: 1, width: step - 2, height: step - 2, rx: 4 }));
       const drawn = glyph(verdict, choice, decided);
-      drawn.setAttribute("transform", `translate(${STEP / 2} ${STEP / 2})`);
+      drawn.setAttribute("transform", `translate(${step / 2} ${step / 2}) scale(${step / WIDE})`);
       group.append(drawn);
       group.addEventListener("click", (event) => (event.shiftKey ? toggle(row, column) : look(row, column)));
       svg.append(group);
       wells.set(key(row, column), group);
     }
-    svg.append(make("rect", { class: "cursor", width: STEP - 2, height: STEP - 2, rx: 4, visibility: "hidden" }));
+    svg.append(make("rect", { class: "cursor", width: step - 2, height: step - 2, rx: 4, visibility: "hidden" }));
     point();
     mark();
   };

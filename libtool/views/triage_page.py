@@ -16,7 +16,7 @@ from libtool.records import Choice, ElectrophileSite, NotAvailable, Role, Verdic
 from libtool.triage.library import Pair
 from libtool.triage.session import Session, SessionState
 from libtool.views.approach_viewer import ApproachViewer
-from libtool.views.cards import block_title, caution, counts_line, message, pair_card
+from libtool.views.cards import caution, counts_line, message, pair_head, pair_reasons
 from libtool.views.plate_grid import Cell, PlateGrid
 
 __all__ = ["TriagePage"]
@@ -75,20 +75,23 @@ class TriagePage(ipywidgets.VBox):
         self.number = ipywidgets.BoundedIntText(value=1, min=1, max=1, description="plate")
         self.flag = ipywidgets.Dropdown(options=self._flag_options(), value=_ANY_FLAG, description="show")
         self.flagged = ipywidgets.Select(rows=7, layout=ipywidgets.Layout(width="100%"))
-        self.card = ipywidgets.HTML(message("Pick a well to see the pair."))
-        self.viewer = ApproachViewer()
+        self.head = ipywidgets.HTML(message("Pick a well to see the pair."))
+        self.viewer = ApproachViewer(height=300)
+        self.reasons = ipywidgets.HTML()
         self.note = ipywidgets.Text(
             placeholder="why (kept with the decision)", layout=ipywidgets.Layout(width="auto", flex="1 1 200px")
         )
         self.buttons = {
-            choice: ipywidgets.Button(description=words, tooltip=tip)
+            choice: ipywidgets.Button(description=words, tooltip=tip, layout=ipywidgets.Layout(width="90px"))
             for choice, words, tip in (
                 (Choice.MAKE, "Make", "these pairs get a well"),
                 (Choice.PARK, "Park", "leave for later, no well"),
                 (Choice.SKIP, "Skip", "do not make"),
             )
         }
-        self.undo = ipywidgets.Button(description="Take back", tooltip="take back the last decision")
+        self.undo = ipywidgets.Button(
+            description="Take back", tooltip="take back the last decision", layout={"width": "90px"}
+        )
         self.twin = ipywidgets.Button(description="", layout=ipywidgets.Layout(display="none", width="auto"))
         self.scope = ipywidgets.HTML()
         self.answer = ipywidgets.HTML()
@@ -108,10 +111,11 @@ class TriagePage(ipywidgets.VBox):
         bar = ipywidgets.HBox([*self.buttons.values(), self.note, self.undo], layout={"flex_flow": "row wrap"})
         left = ipywidgets.VBox(
             [tabs, self.scope, bar, self.answer, self.flag, self.flagged],
-            layout=ipywidgets.Layout(flex="1 1 480px", min_width="320px"),
+            layout=ipywidgets.Layout(flex="3 1 500px", min_width="320px"),
         )
         right = ipywidgets.VBox(
-            [self.card, self.twin, self.viewer], layout=ipywidgets.Layout(flex="1 1 460px", min_width="320px")
+            [self.head, self.viewer, self.twin, self.reasons],
+            layout=ipywidgets.Layout(flex="2 1 420px", min_width="320px"),
         )
         middle = ipywidgets.HBox([left, right], layout=ipywidgets.Layout(flex_flow="row wrap", grid_gap="12px"))
         return [ipywidgets.HTML(caution()), self.counts, middle, self.write]
@@ -209,8 +213,8 @@ class TriagePage(ipywidgets.VBox):
     def _draw_grid(self, state: SessionState) -> None:
         library = self.session.library
         self.grid.show(
-            [block_title(r.block) for r in library.rows],
-            [block_title(c.block) for c in library.columns],
+            [r.block.id for r in library.rows],
+            [c.block.id for c in library.columns],
             [self._cell(key, *self._place[key]) for key in self._keys],
         )
         self.grid.cursor = self._place.get(state.selected) if state.selected else None
@@ -282,7 +286,8 @@ class TriagePage(ipywidgets.VBox):
         pair = self._pair()
         if pair is None:
             return
-        self.card.value = pair_card(pair, self.session.state.decisions.get(pair.key))
+        self.head.value = pair_head(pair, self.session.state.decisions.get(pair.key))
+        self.reasons.value = pair_reasons(pair)
         twin = self._twin_of(pair)
         self.twin.layout.display = "" if twin else "none"
         self.twin.description = f"Go to the same product from {twin}" if twin else ""
