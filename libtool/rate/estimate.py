@@ -28,6 +28,7 @@ __all__ = [
     "band",
     "electrophile_terms",
     "estimate_rate",
+    "find_solvent",
     "nucleophile_terms",
     "solvents",
     "sum_terms",
@@ -125,7 +126,7 @@ def electrophile_terms(site: ElectrophileSite) -> tuple[Term, ...] | NotAvailabl
 def nucleophile_terms(site: NucleophileSite, conditions: Conditions) -> tuple[Term, ...]:
     """Terms of the nucleophile: its class, and the solvent for its charge type."""
     species = row("site_patterns", site.kind)["species"]
-    solvent = _term_key(f"solvent_{species}", conditions.solvent)
+    solvent = _terms_by_subject()[f"solvent_{species}", find_solvent(conditions.solvent)["name"]]
     return _term("nucleophile", site.kind), _term_of(solvent)
 
 
@@ -164,18 +165,25 @@ def solvents() -> tuple[str, ...]:
     return tuple(sorted({r["subject"] for r in table("rate_terms") if r["block"] == "solvent_neutral"}, key=str.lower))
 
 
+def find_solvent(name: str) -> Row:
+    """Row of `solvents.csv` for a name or synonym, in any case.
+
+    Raises
+    ------
+    InputError
+        There is no rate term for it.
+    """
+    wanted = name.strip().casefold()
+    for entry in table("solvents"):
+        names = (entry["name"], *entry["synonyms"].split(";"))
+        if wanted and wanted in map(str.casefold, names):
+            return entry
+    raise InputError(f"solvent: received {name!r}; there is no rate term for it. Use one of {', '.join(solvents())}.")
+
+
 @cache
 def _terms_by_subject() -> dict[tuple[str, str], Row]:
     return {(r["block"], r["subject"]): r for r in table("rate_terms")}
-
-
-def _term_key(block: str, subject: str) -> Row:
-    found = _terms_by_subject().get((block, subject))
-    if found is None:
-        raise InputError(
-            f"solvent: received {subject!r}; there is no rate term for it. Use one of {', '.join(solvents())}."
-        )
-    return found
 
 
 def _term(block: str, subject: str) -> Term:

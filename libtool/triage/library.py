@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING
 from rdkit import Chem
 
 from libtool.errors import InputError
-from libtool.rate import electrophile_terms, nucleophile_terms, temperature_term
+from libtool.rate import electrophile_terms, find_solvent, nucleophile_terms, temperature_term
 from libtool.rate.estimate import sum_terms
 from libtool.reaction.electrophiles import electrophile_sites
 from libtool.reaction.nucleophiles import nucleophile_sites
@@ -35,7 +35,6 @@ from libtool.records import (
     Term,
     Verdict,
 )
-from libtool.reference.tables import table
 from libtool.triage.flags import electrophile_flags, nucleophile_flags, pair_flags
 from libtool.triage.hazards import condition_hazards, strictest, structure_hazards
 from libtool.triage.remedies import Twin, better_twins, with_twin
@@ -173,7 +172,7 @@ def build_library(
     """
     conditions = conditions or Conditions()
     temperature = temperature_term(conditions)
-    solvent = _solvent(conditions)
+    solvent = Chem.MolFromSmiles(find_solvent(conditions.solvent)["smiles"])
     rows = tuple(_nucleophile(block, conditions) for block in nucleophiles)
     columns = _electrophiles(electrophiles)
     total = len(rows) * len(columns)
@@ -193,12 +192,6 @@ def build_library(
         columns=columns,
         pairs=tuple(lines),
     )
-
-
-def _solvent(conditions: Conditions) -> Chem.Mol | None:
-    """Structure of the plate solvent, for the rules on what must not share a well."""
-    found = next((r["smiles"] for r in table("solvents") if r["name"] == conditions.solvent), "")
-    return Chem.MolFromSmiles(found) if found else None
 
 
 def _nucleophile(block: BuildingBlock, conditions: Conditions) -> Reagent:
@@ -238,7 +231,7 @@ def _no_site(role: str, block: BuildingBlock) -> NotAvailable:
     return NotAvailable(what="relative SN2 rate", reason=f"{block.id} has no {role} site", missing="a reactive site")
 
 
-def _pair(n: Reagent, e: Reagent, temperature: Term, solvent: Chem.Mol | None) -> Pair:
+def _pair(n: Reagent, e: Reagent, temperature: Term, solvent: Chem.Mol) -> Pair:
     n_sites = tuple(s for s in n.sites if isinstance(s, NucleophileSite))
     e_sites = tuple(s for s in e.sites if isinstance(s, ElectrophileSite))
     products = products_of_sites(n_sites, e_sites)
@@ -276,10 +269,9 @@ def _refused_rate(rate: RateEstimate | NotAvailable) -> NotAvailable:
     )
 
 
-def _hazards(n: Reagent, e: Reagent, products: tuple[Product, ...], solvent: Chem.Mol | None) -> tuple[Hazard, ...]:
+def _hazards(n: Reagent, e: Reagent, products: tuple[Product, ...], solvent: Chem.Mol) -> tuple[Hazard, ...]:
     found: dict[str, Hazard] = {h.id: h for h in (*n.hazards, *e.hazards)}
-    things = [n.block.mol, e.block.mol] + ([solvent] if solvent is not None else [])
-    found |= {h.id: h for h in condition_hazards(things)}
+    found |= {h.id: h for h in condition_hazards([n.block.mol, e.block.mol, solvent])}
     for product in products:
         found |= {h.id: h for h in structure_hazards(Chem.MolFromSmiles(product.smiles), "product")}
     order = list(HazardLevel)
