@@ -17,7 +17,7 @@ from typing import Any
 
 from hatchling.builders.hooks.plugin.interface import BuildHookInterface
 
-SCRIPTS = ("3Dmol-min.js", "3Dmol.es6-min.js")
+SCRIPTS = ("3Dmol-min.js",)
 LICENCE = "LICENSE.txt"
 VERSION = "version.txt"
 

@@ -16,8 +16,8 @@ import pytest
 from libtool.assets import threedmol
 from libtool.errors import LibtoolError
 
-SCRIPT_FILES = {"3Dmol-min.js", "3Dmol.es6-min.js", "LICENSE.txt", "version.txt"}
-# Two copies of 3Dmol.js take 0.32 MB compressed; the package's own files take the rest.
+SCRIPT_FILES = {"3Dmol-min.js", "LICENSE.txt", "version.txt"}
+# 3Dmol.js takes 0.16 MB compressed; the package's own files take the rest.
 WHEEL_BYTES = 1_000_000
 
 
@@ -116,8 +116,7 @@ def by_hand(root_folder: Path, folder: Path, version: str) -> None:
     package.joinpath("package.json").write_text(json.dumps({"version": version}), "utf-8")
     package.joinpath("LICENSE").write_text("terms", "utf-8")
     fetched = root_folder / "libtool" / "assets" / "threedmol"
-    for name in ("3Dmol-min.js", "3Dmol.es6-min.js"):
-        shutil.copy(fetched / name, package / "build" / name)
+    shutil.copy(fetched / "3Dmol-min.js", package / "build" / "3Dmol-min.js")
 
 
 def test_files_put_there_by_hand_are_used(
