@@ -34,7 +34,7 @@ _LEAVING = "#6b6b6b"
 _FADED_BEYOND_BONDS = 4
 _ARRIVES_FROM_ANG = 4.6
 _LEAVES_BY_ANG = 2.0
-_LABEL_HEIGHT_ANG = 0.75
+_LABEL_HEIGHT_ANG = 1.1
 
 LEGEND = (
     (_INCOMING, "incoming nucleophile (nitrogen), arriving along the dashed line"),

@@ -64,6 +64,7 @@ def _svg(mol: Chem.Mol, colours: dict[int, _Colour], width: int, height: int) ->
     # The stubs of RDKit 2026.9 give the settings the type of their owner.
     options.fixedBondLength = 22  # type: ignore[assignment]
     options.padding = 0.08  # type: ignore[assignment]
+    options.annotationFontScale = 0.9  # type: ignore[assignment]
     drawn = rdMolDraw2D.PrepareMolForDrawing(Chem.Mol(mol), kekulize=True)
     marked = sorted(colours)
     bonds = [b.GetIdx() for b in drawn.GetBonds() if b.GetBeginAtomIdx() in colours and b.GetEndAtomIdx() in colours]

@@ -80,6 +80,11 @@ function render({ model, el }) {
         : { x, y: top - 6, "text-anchor": "middle" };
       svg.append(label(name, place, () => markLine((c) => c[1] === j)));
     });
+    const taken = new Set(model.get("_cells").map((cell) => key(cell[0], cell[1])));
+    rows.forEach((_, i) => columns.forEach((__, j) => {
+      if (taken.has(key(i, j))) return;
+      svg.append(make("circle", { class: "empty", cx: left + (j + 0.5) * step, cy: top + (i + 0.5) * step, r: step * 0.3 }));
+    }));
     wells = new Map();
     for (const [row, column, verdict, choice, decided, words] of model.get("_cells")) {
       const x = left + column * step;
