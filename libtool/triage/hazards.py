@@ -9,15 +9,16 @@ licensed practice come first, always.
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
 from functools import cache
 
 from rdkit import Chem
 
 from libtool.records import Hazard, HazardLevel
-from libtool.reference.tables import Row, table
+from libtool.reference.tables import Row, row, table
 
-__all__ = ["CAUTION", "condition_hazards", "strictest", "structure_hazards"]
+__all__ = ["CAUTION", "MeetingSides", "condition_hazards", "meeting_sides", "strictest", "structure_hazards"]
 
 CAUTION = (
     "Alkylating agents are toxic and many are mutagens or carcinogens. Read the SDS of every reagent first; local "
@@ -46,29 +47,45 @@ def structure_hazards(mol: Chem.Mol, subject: str) -> tuple[Hazard, ...]:
     return _strictest_first(found)
 
 
-def condition_hazards(things: Iterable[Chem.Mol]) -> tuple[Hazard, ...]:
+@dataclass(frozen=True, slots=True)
+class MeetingSides:
+    """Rules on what must not meet, by key: those whose one or other side a structure is."""
+
+    pattern: frozenset[str]
+    partner: frozenset[str]
+
+
+def meeting_sides(mol: Chem.Mol) -> MeetingSides:
+    """Sides of the rules on what must not meet that a structure takes; once per reagent."""
+    rules = [(entry["key"], pattern, partner) for entry, pattern, partner in _patterns() if partner is not None]
+    return MeetingSides(
+        pattern=frozenset(key for key, pattern, _ in rules if mol.HasSubstructMatch(pattern)),
+        partner=frozenset(key for key, _, partner in rules if mol.HasSubstructMatch(partner)),
+    )
+
+
+def condition_hazards(things: Sequence[MeetingSides]) -> tuple[Hazard, ...]:
     """Cautions about things that share a well: two reagents, the solvent.
 
     Parameters
     ----------
-    things : iterable of rdkit.Chem.Mol
+    things : sequence of MeetingSides
+        Of everything in the well.
 
     Returns
     -------
     tuple of Hazard
-        One per rule for which one thing matches the pattern and another the
-        partner pattern.
+        One per rule for which one thing takes one side and another thing the
+        other.
     """
-    mols = tuple(things)
-    found: list[Hazard] = []
-    for entry, pattern, partner in _patterns():
-        if partner is None:
-            continue
-        first = [i for i, mol in enumerate(mols) if mol.HasSubstructMatch(pattern)]
-        second = [i for i, mol in enumerate(mols) if mol.HasSubstructMatch(partner)]
-        if any(i != j for i in first for j in second):
-            found.append(_hazard(entry))
-    return _strictest_first(found)
+    keys = {
+        key
+        for i, one in enumerate(things)
+        for j, other in enumerate(things)
+        if i != j
+        for key in one.pattern & other.partner
+    }
+    return _strictest_first([_hazard(row("hazards", key)) for key in keys])
 
 
 def strictest(hazards: Iterable[Hazard]) -> HazardLevel | None:

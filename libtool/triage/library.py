@@ -36,7 +36,7 @@ from libtool.records import (
     Verdict,
 )
 from libtool.triage.flags import electrophile_flags, nucleophile_flags, pair_flags
-from libtool.triage.hazards import condition_hazards, strictest, structure_hazards
+from libtool.triage.hazards import MeetingSides, condition_hazards, meeting_sides, strictest, structure_hazards
 from libtool.triage.remedies import Twin, better_twins, with_twin
 
 if TYPE_CHECKING:
@@ -55,6 +55,7 @@ class Reagent:
     sites: tuple[NucleophileSite, ...] | tuple[ElectrophileSite, ...]
     flags: tuple[Flag, ...]
     hazards: tuple[Hazard, ...]
+    sides: MeetingSides
     terms: tuple[Term, ...] | NotAvailable
     twin: Twin | None = None
 
@@ -172,7 +173,7 @@ def build_library(
     """
     conditions = conditions or Conditions()
     temperature = temperature_term(conditions)
-    solvent = Chem.MolFromSmiles(find_solvent(conditions.solvent)["smiles"])
+    solvent = meeting_sides(Chem.MolFromSmiles(find_solvent(conditions.solvent)["smiles"]))
     rows = tuple(_nucleophile(block, conditions) for block in nucleophiles)
     columns = _electrophiles(electrophiles)
     total = len(rows) * len(columns)
@@ -202,6 +203,7 @@ def _nucleophile(block: BuildingBlock, conditions: Conditions) -> Reagent:
         sites=sites,
         flags=nucleophile_flags(block, sites),
         hazards=structure_hazards(block.mol, "reagent"),
+        sides=meeting_sides(block.mol),
         terms=terms,
     )
 
@@ -220,6 +222,7 @@ def _electrophiles(blocks: BlockSet) -> tuple[Reagent, ...]:
                 sites=found,
                 flags=with_twin(flags, twin),
                 hazards=structure_hazards(block.mol, "reagent"),
+                sides=meeting_sides(block.mol),
                 terms=electrophile_terms(found[0]) if found else _no_site("electrophile", block),
                 twin=twin,
             )
@@ -231,7 +234,7 @@ def _no_site(role: str, block: BuildingBlock) -> NotAvailable:
     return NotAvailable(what="relative SN2 rate", reason=f"{block.id} has no {role} site", missing="a reactive site")
 
 
-def _pair(n: Reagent, e: Reagent, temperature: Term, solvent: Chem.Mol) -> Pair:
+def _pair(n: Reagent, e: Reagent, temperature: Term, solvent: MeetingSides) -> Pair:
     n_sites = tuple(s for s in n.sites if isinstance(s, NucleophileSite))
     e_sites = tuple(s for s in e.sites if isinstance(s, ElectrophileSite))
     products = products_of_sites(n_sites, e_sites)
@@ -269,9 +272,9 @@ def _refused_rate(rate: RateEstimate | NotAvailable) -> NotAvailable:
     )
 
 
-def _hazards(n: Reagent, e: Reagent, products: tuple[Product, ...], solvent: Chem.Mol) -> tuple[Hazard, ...]:
+def _hazards(n: Reagent, e: Reagent, products: tuple[Product, ...], solvent: MeetingSides) -> tuple[Hazard, ...]:
     found: dict[str, Hazard] = {h.id: h for h in (*n.hazards, *e.hazards)}
-    found |= {h.id: h for h in condition_hazards([n.block.mol, e.block.mol, solvent])}
+    found |= {h.id: h for h in condition_hazards([n.sides, e.sides, solvent])}
     for product in products:
         found |= {h.id: h for h in structure_hazards(Chem.MolFromSmiles(product.smiles), "product")}
     order = list(HazardLevel)
