@@ -3,32 +3,31 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from pathlib import Path
-from typing import TYPE_CHECKING
 
 from libtool.blocks.blockset import BlockSet
 from libtool.blocks.clean import Refusal, parent_structure
 from libtool.blocks.columns import find_columns
-from libtool.blocks.rows import read_rows
+from libtool.blocks.rows import Source, read_rows
 from libtool.errors import InputError
 from libtool.records import BuildingBlock, RowIssue
-
-if TYPE_CHECKING:
-    import pandas
 
 __all__ = ["read_blocks"]
 
 
-def read_blocks(source: str | Path | pandas.DataFrame, *, mapping: Mapping[str, str] | None = None) -> BlockSet:
+def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, sheet: str | None = None) -> BlockSet:
     """Building blocks of a list, and an account of every row that is not one.
 
     Parameters
     ----------
-    source : path or pandas.DataFrame
-        CSV, TSV, SMI, SDF, or a DataFrame.
+    source : path, pandas.DataFrame or sequence of str
+        CSV, TSV, XLSX, Parquet, SMI, SDF (text formats also gzipped), a
+        DataFrame, or a list of SMILES.
     mapping : mapping, optional
         Columns to use instead of the ones that would be found, for instance
         ``{"structure": "Smiles parent", "id": "Cat. No."}``.
+
+    sheet : str, optional
+        Sheet of a workbook that has several.
 
     Returns
     -------
@@ -49,7 +48,7 @@ def read_blocks(source: str | Path | pandas.DataFrame, *, mapping: Mapping[str, 
     >>> blocks.summary()
     'DataFrame: 2 rows = 1 blocks + 0 duplicates + 1 rejected'
     """
-    rows = read_rows(source)
+    rows = read_rows(source, sheet=sheet)
     columns = find_columns(rows, mapping)
     blocks: list[BuildingBlock] = []
     duplicates: list[RowIssue] = []
