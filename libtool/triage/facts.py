@@ -29,6 +29,7 @@ _COMPETING_ODDS = 1.0
 _MINOR_ISOMER_ODDS = 1.5
 # Classes at and above aniline react with an electrophile of the same molecule.
 _SELF_REACTIVE_KINDS_FLOOR = "aniline"
+_STRONGEST_GROUPS = frozenset({"OTf", "OSO2F"})
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,6 +81,20 @@ def bridgehead(block: BuildingBlock, site: ElectrophileSite | None) -> Finding |
 def outside_cage(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
     """Tertiary carbon that is not a bridgehead, which has a flag of its own."""
     if site is None or site.carbon_class == "bridgehead":
+        return None
+    return _on_electrophile(site.carbon, site.leaving_atoms[0])
+
+
+def not_a_triflate(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
+    """Any leaving group but triflate and fluorosulfate, which overcome a slow carbon."""
+    if site is None or site.leaving_group in _STRONGEST_GROUPS:
+        return None
+    return _on_electrophile(site.carbon, site.leaving_atoms[0])
+
+
+def a_triflate(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
+    """Triflate or fluorosulfate."""
+    if site is None or site.leaving_group not in _STRONGEST_GROUPS:
         return None
     return _on_electrophile(site.carbon, site.leaving_atoms[0])
 
@@ -343,7 +358,7 @@ def _named(*functions: Callable[..., Finding | None]) -> dict[str, Callable[...,
 
 
 ELECTROPHILE_FACTS: Mapping[str, ElectrophileFact] = _named(
-    beta_branches, bridgehead, outside_cage, poor_leaving_group, unactivated_chloride, several_leaving_groups,
+    beta_branches, bridgehead, outside_cage, not_a_triflate, a_triflate, poor_leaving_group, unactivated_chloride, several_leaving_groups,
     acylating_group, electrophile_salt, defined_stereocentre, racemisable, self_reactive, no_electrophilic_site,
 )  # fmt: skip
 NUCLEOPHILE_FACTS: Mapping[str, NucleophileFact] = _named(

@@ -81,7 +81,12 @@ class Session:
         return self._pairs[key]
 
     def choice(self, key: PairKey) -> Choice:
-        """What holds for a pair: the decision if there is one, else the suggestion."""
+        """What holds for a pair: the decision if there is one, else the suggestion.
+
+        A refused pair is never made, whatever an older decision says.
+        """
+        if self.pair(key).verdict is Verdict.REFUSED:
+            return Choice.SKIP
         decision = self._state.decisions.get(key)
         return decision.choice if decision and decision.choice else self.pair(key).suggestion
 
@@ -133,7 +138,7 @@ class Session:
 
     def to_make(self) -> tuple[Pair, ...]:
         """Pairs that get a well, in the order of the library. Refused pairs never do."""
-        return tuple(p for p in self.library if self.choice(p.key) is Choice.MAKE and p.verdict is not Verdict.REFUSED)
+        return tuple(p for p in self.library if self.choice(p.key) is Choice.MAKE)
 
     def _read(self) -> tuple[Mapping[PairKey, Decision], tuple[Decision, ...]]:
         known = {_identity(p): p.key for p in self._pairs.values()}
