@@ -358,8 +358,9 @@ def _named(*functions: Callable[..., Finding | None]) -> dict[str, Callable[...,
 
 
 ELECTROPHILE_FACTS: Mapping[str, ElectrophileFact] = _named(
-    beta_branches, bridgehead, outside_cage, not_a_triflate, a_triflate, poor_leaving_group, unactivated_chloride, several_leaving_groups,
-    acylating_group, electrophile_salt, defined_stereocentre, racemisable, self_reactive, no_electrophilic_site,
+    beta_branches, bridgehead, outside_cage, not_a_triflate, a_triflate, poor_leaving_group, unactivated_chloride,
+    several_leaving_groups, acylating_group, electrophile_salt, defined_stereocentre, racemisable, self_reactive,
+    no_electrophilic_site,
 )  # fmt: skip
 NUCLEOPHILE_FACTS: Mapping[str, NucleophileFact] = _named(
     acid_salt, no_nucleophilic_site, several_nucleophilic_sites, regioisomers, nitrogen_or_oxygen
