@@ -10,6 +10,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from libtool.blocks.columns import Columns
+from libtool.blocks.inventory import Container
 from libtool.errors import InputError
 from libtool.records import BuildingBlock, RowIssue
 
@@ -38,6 +39,11 @@ class BlockSet:
         Rows whose parent is already there under another row.
     rejected : tuple of RowIssue
         Rows without a usable structure.
+    containers : tuple of Container
+        One per block and per duplicate, in file order: what the store holds.
+    remarks : tuple of RowIssue
+        Cells of usable rows that could not be read, such as an amount without
+        a unit.
     """
 
     name: str
@@ -47,6 +53,8 @@ class BlockSet:
     blocks: tuple[BuildingBlock, ...]
     duplicates: tuple[RowIssue, ...]
     rejected: tuple[RowIssue, ...]
+    containers: tuple[Container, ...] = ()
+    remarks: tuple[RowIssue, ...] = ()
 
     def __len__(self) -> int:
         """Count the usable blocks."""
@@ -99,17 +107,19 @@ class BlockSet:
 
     @property
     def issues(self) -> pandas.DataFrame:
-        """Duplicates and rejected rows as a table.
+        """Duplicates, rejected rows and remarks as a table.
 
         Returns
         -------
         pandas.DataFrame
-            Columns row, outcome ("duplicate" or "rejected"), column,
-            received, reason, remedy; in the order of the input.
+            Columns row, outcome ("duplicate", "rejected", or "remark" on a
+            row that is used), column, received, reason, remedy; in the order
+            of the input.
         """
         import pandas
 
-        found = [("duplicate", i) for i in self.duplicates] + [("rejected", i) for i in self.rejected]
+        outcomes = (("duplicate", self.duplicates), ("rejected", self.rejected), ("remark", self.remarks))
+        found = [(outcome, issue) for outcome, issues in outcomes for issue in issues]
         found.sort(key=lambda pair: pair[1].row)
         return pandas.DataFrame(
             [(i.row, outcome, i.column, i.received, i.reason, i.remedy) for outcome, i in found],

@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from libtool.blocks.blockset import BlockSet
 from libtool.blocks.clean import Refusal, parent_structure
 from libtool.blocks.columns import find_columns
+from libtool.blocks.inventory import Container, Shelf
 from libtool.blocks.rows import Source, read_rows
 from libtool.errors import InputError
 from libtool.records import BuildingBlock, RowIssue
@@ -50,6 +51,9 @@ def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, she
     """
     rows = read_rows(source, sheet=sheet)
     columns = find_columns(rows, mapping)
+    shelf = Shelf(rows, columns)
+    containers: list[Container] = []
+    remarks: list[RowIssue] = []
     blocks: list[BuildingBlock] = []
     duplicates: list[RowIssue] = []
     rejected: list[RowIssue] = []
@@ -75,6 +79,9 @@ def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, she
                     f"{block_id} counts as another container of {twin.id}; nothing to do",
                 )
             )
+            container, unread = shelf.container(number, cells, twin.id, block_id, parent.mol, parent.counterions)
+            containers.append(container)
+            remarks.extend(unread)
             continue
         if block_id in row_of_id:
             rejected.append(
@@ -100,6 +107,9 @@ def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, she
         row_of_smiles[parent.smiles] = block
         row_of_id[block_id] = number
         blocks.append(block)
+        container, unread = shelf.container(number, cells, block_id, block_id, parent.mol, parent.counterions)
+        containers.append(container)
+        remarks.extend(unread)
     if not blocks:
         first = f" First: {rejected[0]}" if rejected else ""
         raise InputError(f"{rows.name}: none of its {len(rows.rows)} rows can be used.{first}", rejected)
@@ -111,6 +121,8 @@ def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, she
         blocks=tuple(blocks),
         duplicates=tuple(duplicates),
         rejected=tuple(rejected),
+        containers=tuple(containers),
+        remarks=tuple(remarks),
     )
 
 
