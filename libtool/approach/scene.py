@@ -78,7 +78,7 @@ def scene(approach: Approach, *, conformer: int | None = None, marked: Iterable[
     mol = _placed(approach.mol, shown.conformer, positions)
     carbon, leaving = approach.site.carbon, approach.site.leaving_atoms[0]
     near = _near_atoms(mol, carbon)
-    calls: list[Call] = [("addModel", (Chem.MolToMolBlock(mol), "mol"))]
+    calls: list[Call] = [("addModel", (Chem.MolToMolBlock(mol), "sdf"))]
     calls += _sticks(mol, near, set(marked))
     calls += _spheres(shown, carbon)
     calls += _path(positions, leaving)
@@ -157,7 +157,7 @@ def _sticks(mol: Chem.Mol, near: set[int], marked: set[int]) -> list[Call]:
         calls.append(
             (
                 "setStyle",
-                ({"index": far}, {"stick": {"radius": 0.06, "colorscheme": "Jmol", "opacity": 0.35}}),
+                ({"index": far}, {"stick": {"radius": 0.06, "colorscheme": "Jmol"}}),
             )
         )
     thick = sorted(marked & near)
@@ -177,7 +177,7 @@ def _spheres(shown: ConformerApproach, carbon: int) -> list[Call]:
     calls.append(("addStyle", ({"index": [carbon]}, {"sphere": {"radius": 0.32, "color": _CARBON}})))
     if shown.intruders:
         atoms = [i.atom for i in shown.intruders]
-        calls.append(("addStyle", ({"index": atoms}, {"sphere": {"scale": 1.0, "color": _IN_THE_WAY, "opacity": 0.8}})))
+        calls.append(("addStyle", ({"index": atoms}, {"sphere": {"scale": 1.0, "color": _IN_THE_WAY}})))
     return calls
 
 

@@ -8,7 +8,7 @@ from html import escape
 
 from libtool.records import Choice, Verdict
 
-__all__ = ["VERDICT_LETTERS", "VERDICT_WORDS", "Cell", "grid_svg", "legend"]
+__all__ = ["CHOICE_WORDS", "VERDICT_LETTERS", "VERDICT_WORDS", "Cell", "grid_svg", "legend"]
 
 VERDICT_WORDS = {
     Verdict.GO: "should work",
@@ -16,12 +16,28 @@ VERDICT_WORDS = {
     Verdict.STUCK: "will fail as it stands",
     Verdict.REFUSED: "refused, not to be made here",
 }
+"""What the toolkit thinks of a pair, in the legends."""
+
+CHOICE_WORDS = {
+    Choice.MAKE: "filled: make",
+    Choice.PARK: "half filled: park",
+    Choice.SKIP: "hollow: skip",
+}
+"""What holds for a pair, in the legends."""
+
 VERDICT_LETTERS = {Verdict.GO: "", Verdict.WATCH: "!", Verdict.STUCK: "F", Verdict.REFUSED: "R"}
 _SHAPES = {
     Verdict.GO: '<circle r="8"/>',
     Verdict.WATCH: '<path d="M0-10L10 0L0 10L-10 0z"/>',
     Verdict.STUCK: '<path d="M-8-8H8V8H-8z"/>',
     Verdict.REFUSED: '<path d="M-4.1-10H4.1L10-4.1V4.1L4.1 10H-4.1L-10 4.1V-4.1z"/>',
+}
+# Left half of each shape, filled for a parked pair.
+_HALVES = {
+    Verdict.GO: '<path class="half" d="M0-8a8 8 0 0 0 0 16z"/>',
+    Verdict.WATCH: '<path class="half" d="M0-10L-10 0L0 10z"/>',
+    Verdict.STUCK: '<path class="half" d="M-8-8H0V8H-8z"/>',
+    Verdict.REFUSED: "",
 }
 # Grid units; a glyph is 20 of them wide.
 _STEP = 24
@@ -90,8 +106,7 @@ def legend(*, choices: bool) -> str:
     if choices:
         samples += [
             (Verdict.REFUSED, Choice.SKIP, VERDICT_WORDS[Verdict.REFUSED]),
-            (Verdict.GO, Choice.PARK, "dashed: parked"),
-            (Verdict.WATCH, Choice.SKIP, "hollow: not made"),
+            *((Verdict.GO, choice, words) for choice, words in CHOICE_WORDS.items()),
         ]
     items = "".join(
         '<li><svg class="grid" width="24" height="24" viewBox="0 0 24 24" aria-hidden="true">'
@@ -102,11 +117,13 @@ def legend(*, choices: bool) -> str:
 
 
 def _glyph(cell: Cell, place: str) -> str:
-    letter = VERDICT_LETTERS[cell.verdict]
+    # A letter on a half-filled shape could not be read.
+    letter = "" if cell.choice is Choice.PARK else VERDICT_LETTERS[cell.verdict]
     text = f'<text y="4" text-anchor="middle">{letter}</text>' if letter else ""
     words = f"<title>{escape(cell.words)}</title>" if cell.words else ""
+    half = _HALVES[cell.verdict] if cell.choice is Choice.PARK else ""
     kinds = f"{cell.verdict.value} {cell.choice.value}"
-    return f'<g class="{kinds}" transform="{place}">{words}{_SHAPES[cell.verdict]}{text}</g>'
+    return f'<g class="{kinds}" transform="{place}">{words}{_SHAPES[cell.verdict]}{half}{text}</g>'
 
 
 def _short(name: str) -> str:

@@ -98,7 +98,8 @@ def carbon_atoms(site: ElectrophileSite, pattern: Chem.Mol) -> tuple[int, ...] |
 
 
 def _match_at_carbon(stripped: Chem.Mol, pattern: Chem.Mol) -> tuple[int, ...] | None:
-    return next((m for m in stripped.GetSubstructMatches(pattern, maxMatches=10_000) if m[:2] == (0, 1)), None)
+    found = stripped.GetSubstructMatches(pattern, maxMatches=10_000, uniquify=False)
+    return next((m for m in found if m[:2] == (0, 1)), None)
 
 
 def _is_sp3(site: ElectrophileSite) -> bool:

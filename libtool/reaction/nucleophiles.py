@@ -77,7 +77,8 @@ def _matches(mol: Chem.Mol) -> dict[int, str]:
     """Class of each recognised atom; the most preferred class wins."""
     kinds: dict[int, str] = {}
     for kind, pattern in _patterns():
-        for match in mol.GetSubstructMatches(pattern, maxMatches=10_000):
+        # Not uniquified: a pattern that reads the same backwards fits either end.
+        for match in mol.GetSubstructMatches(pattern, maxMatches=10_000, uniquify=False):
             kinds.setdefault(match[0], kind)
     return kinds
 
@@ -124,7 +125,7 @@ def _regiochemistry(form: Chem.Mol, index: int) -> float:
     atom = form.GetAtomWithIdx(index)
     total = 0.0
     for key, pattern in _regiochemistry_patterns():
-        if any(match[0] == index for match in form.GetSubstructMatches(pattern)):
+        if any(match[0] == index for match in form.GetSubstructMatches(pattern, uniquify=False)):
             total += number(row("regiochemistry", key), "log10_odds")
     if atom.GetIsAromatic() and atom.GetAtomicNum() == 7:
         total += _crowding(form, atom) * number(row("regiochemistry", "azole_substituted_neighbour"), "log10_odds")

@@ -78,9 +78,9 @@ def bridgehead(block: BuildingBlock, site: ElectrophileSite | None) -> Finding |
     return _on_electrophile(site.carbon, site.leaving_atoms[0])
 
 
-def outside_cage(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
-    """Tertiary carbon that is not a bridgehead, which has a flag of its own."""
-    if site is None or site.carbon_class == "bridgehead":
+def plain_tertiary(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
+    """Tertiary carbon without a flag of its own: no bridgehead, trityl type or acceptor beside it."""
+    if site is None or site.carbon_class != "tertiary":
         return None
     return _on_electrophile(site.carbon, site.leaving_atoms[0])
 
@@ -149,7 +149,7 @@ def racemisable(block: BuildingBlock, site: ElectrophileSite | None) -> Finding 
     found = defined_stereocentre(block, site)
     if found is None or site is None:
         return None
-    matches = [m for m in block.mol.GetSubstructMatches(_ACIDIC_NEIGHBOUR) if m[0] == site.carbon]
+    matches = [m for m in block.mol.GetSubstructMatches(_ACIDIC_NEIGHBOUR, uniquify=False) if m[0] == site.carbon]
     return _on_electrophile(*matches[0]) if matches else None
 
 
@@ -358,7 +358,7 @@ def _named(*functions: Callable[..., Finding | None]) -> dict[str, Callable[...,
 
 
 ELECTROPHILE_FACTS: Mapping[str, ElectrophileFact] = _named(
-    beta_branches, bridgehead, outside_cage, not_a_triflate, a_triflate, poor_leaving_group, unactivated_chloride,
+    beta_branches, bridgehead, plain_tertiary, not_a_triflate, a_triflate, poor_leaving_group, unactivated_chloride,
     several_leaving_groups, acylating_group, electrophile_salt, defined_stereocentre, racemisable, self_reactive,
     no_electrophilic_site,
 )  # fmt: skip

@@ -55,7 +55,7 @@ def nucleophile_flags(block: BuildingBlock, sites: Sequence[NucleophileSite]) ->
         finding: Finding | None = None
         pattern = _pattern(entry["smarts"])
         if pattern is not None:
-            matches = sites[0].form.GetSubstructMatches(pattern) if sites else ()
+            matches = sites[0].form.GetSubstructMatches(pattern, uniquify=False) if sites else ()
             anchored = [m for m in matches if m[0] == sites[0].atom]
             finding = Finding(Role.NUCLEOPHILE, anchored[0]) if anchored else None
         elif entry["fact"]:

@@ -73,7 +73,7 @@ class Journal:
 
     def __init__(self, path: str | Path, *, who: str = "") -> None:
         self.path = Path(path)
-        self.who = who or getpass.getuser()
+        self.who = who or _login_name()
         with self._open() as connection:
             self._prepare(connection)
 
@@ -191,6 +191,14 @@ class Journal:
                 f"decisions file {self.path}: written by a newer version of the toolkit (layout {version}, this one "
                 f"knows {_SCHEMA_VERSION}). Update the toolkit."
             )
+
+
+def _login_name() -> str:
+    """Name of the account; containers run accounts that have none."""
+    try:
+        return getpass.getuser()
+    except (OSError, KeyError, ImportError):
+        return "unknown account"
 
 
 def _statements(script: str) -> Iterator[str]:

@@ -210,7 +210,10 @@ def _nucleophile(block: BuildingBlock, conditions: Conditions) -> Reagent:
 
 def _electrophiles(blocks: BlockSet) -> tuple[Reagent, ...]:
     sites = {block.id: electrophile_sites(block) for block in blocks}
-    twins = better_twins(found[0] for found in sites.values() if found)
+    hazards = {block.id: structure_hazards(block.mol, "reagent") for block in blocks}
+    # A reagent that is refused or needs an approval is nobody's remedy.
+    usable = (found[0] for i, found in sites.items() if found and not _restricted(hazards[i]))
+    twins = better_twins(usable)
     reagents: list[Reagent] = []
     for block in blocks:
         found = sites[block.id]
@@ -221,13 +224,17 @@ def _electrophiles(blocks: BlockSet) -> tuple[Reagent, ...]:
                 block=block,
                 sites=found,
                 flags=with_twin(flags, twin),
-                hazards=structure_hazards(block.mol, "reagent"),
+                hazards=hazards[block.id],
                 sides=meeting_sides(block.mol),
                 terms=electrophile_terms(found[0]) if found else _no_site("electrophile", block),
                 twin=twin,
             )
         )
     return tuple(reagents)
+
+
+def _restricted(hazards: tuple[Hazard, ...]) -> bool:
+    return strictest(hazards) in {HazardLevel.STOP, HazardLevel.COMPLIANCE}
 
 
 def _no_site(role: str, block: BuildingBlock) -> NotAvailable:
@@ -331,7 +338,7 @@ def _pair_row(p: Pair) -> tuple[object, ...]:
         p.suggestion_reason,
         ";".join(f.id for f in p.flags),
         " ".join(f.sentence for f in p.flags),
-        " ".join(dict.fromkeys(f.remedy.sentence for f in p.flags if f.level is not Level.NOTE)),
+        " ".join(dict.fromkeys(f.remedy.sentence for f in p.flags if f.level is not Level.NOTE)) if p.products else "",
         ";".join(h.id for h in p.hazards),
         ";".join(dict.fromkeys(k for f in p.flags for k in f.source.split(";"))),
     )

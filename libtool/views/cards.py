@@ -9,11 +9,11 @@ from __future__ import annotations
 from html import escape
 from typing import TYPE_CHECKING
 
+from libtool.export.grid_svg import VERDICT_WORDS
+from libtool.export.structure_svg import block_svg, product_svg
 from libtool.records import Choice, HazardLevel, Level, RateEstimate, Role, Verdict
 from libtool.reference.tables import cite
 from libtool.triage.hazards import CAUTION
-from libtool.views.drawings import block_svg, product_svg
-from libtool.views.plate_grid import VERDICT_WORDS
 
 if TYPE_CHECKING:
     from libtool.records import BuildingBlock, Decision, Flag, Hazard, NotAvailable
@@ -24,7 +24,7 @@ __all__ = ["block_title", "caution", "counts_line", "message", "pair_head", "pai
 
 _TONES = {
     Verdict.GO: "#16786a",
-    Verdict.WATCH: "#c06c00",
+    Verdict.WATCH: "#b96400",
     Verdict.STUCK: "#8b3a74",
     Verdict.REFUSED: "#4a4a4a",
 }
@@ -114,12 +114,15 @@ def _scheme(pair: Pair) -> str:
     flagged = {role: {a for f in pair.flags if f.role is role for a in f.atoms} for role in Role}
     n_reacting = [product.nucleophile.atom] if product else []
     e_reacting = [product.electrophile.carbon] if product else []
-    left = block_svg(pair.nucleophile, reacting=n_reacting, flagged=flagged[Role.NUCLEOPHILE])
-    right = block_svg(pair.electrophile, reacting=e_reacting, flagged=flagged[Role.ELECTROPHILE])
+    size = {"width": 150, "height": 105}
+    left = block_svg(pair.nucleophile, reacting=n_reacting, flagged=flagged[Role.NUCLEOPHILE], **size)
+    right = block_svg(pair.electrophile, reacting=e_reacting, flagged=flagged[Role.ELECTROPHILE], **size)
     drawn = [left, sign.format("+"), right]
     if product:
-        drawn += [sign.format("→"), product_svg(product)]
-    return f'<div style="display:flex;flex-wrap:wrap;align-items:center;margin:4px 0">{"".join(drawn)}</div>'
+        drawn += [sign.format("→"), product_svg(product, width=200, height=105)]
+    # Structures are drawn in dark colours whatever the theme of the notebook.
+    style = "display:flex;flex-wrap:wrap;align-items:center;margin:4px 0;background:#fff;color:#111"
+    return f'<div style="{style}">{"".join(drawn)}</div>'
 
 
 _STEREO_WORDS = {

@@ -23,13 +23,13 @@ const SHAPES = {
   go: ["M-8 0a8 8 0 1 0 16 0a8 8 0 1 0 -16 0z", "M0 -8a8 8 0 0 0 0 16z"],
   watch: ["M0 -9L9 0L0 9L-9 0z", "M0 -9L-9 0L0 9z"],
   stuck: ["M-7 -7H7V7H-7z", "M-7 -7H0V7H-7z"],
-  refused: ["M-6 -6L6 6M6 -6L-6 6", ""],
+  refused: ["M-3.7 -9H3.7L9 -3.7V3.7L3.7 9H-3.7L-9 3.7V-3.7z", ""],
 };
 
 function glyph(verdict, choice, decided) {
   const [outline, half] = SHAPES[verdict];
   const group = make("g", { class: `${verdict} ${choice}` });
-  group.append(make("path", { d: outline, class: verdict === "refused" ? "glyph" : "glyph area" }));
+  group.append(make("path", { d: outline, class: "glyph" }));
   if (choice === "park" && half) group.append(make("path", { d: half, class: "half" }));
   if (decided) group.append(make("circle", { cx: 8.5, cy: -8.5, r: 3, class: "dot" }));
   return group;

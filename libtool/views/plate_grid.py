@@ -10,26 +10,15 @@ from importlib import resources
 import anywidget
 import traitlets
 
+from libtool.export.grid_svg import CHOICE_WORDS, VERDICT_WORDS
 from libtool.records import Choice, Verdict
 
-__all__ = ["CHOICE_WORDS", "VERDICT_WORDS", "Cell", "PlateGrid"]
+__all__ = ["Cell", "PlateGrid"]
 
 Place = tuple[int, int]
 
-VERDICT_WORDS = {
-    Verdict.GO: "should work",
-    Verdict.WATCH: "watch: a warning",
-    Verdict.STUCK: "stuck: will fail as it stands",
-    Verdict.REFUSED: "refused: not to be made here",
-}
-"""Words of the legend for what the toolkit thinks of a pair."""
-
-CHOICE_WORDS = {
-    Choice.MAKE: "filled: make",
-    Choice.PARK: "half filled: park",
-    Choice.SKIP: "hollow: skip",
-}
-"""Words of the legend for what holds for a pair."""
+# A refused pair is never drawn as made.
+_LEGEND_CHOICE = {v: Choice.SKIP if v is Verdict.REFUSED else Choice.MAKE for v in Verdict}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -70,7 +59,7 @@ class PlateGrid(anywidget.AnyWidget):
         super().__init__(
             name=name,
             _legend=[
-                *([v.value, Choice.MAKE.value, False, words] for v, words in VERDICT_WORDS.items()),
+                *([v.value, _LEGEND_CHOICE[v].value, False, words] for v, words in VERDICT_WORDS.items()),
                 *([Verdict.GO.value, c.value, False, words] for c, words in CHOICE_WORDS.items()),
                 [Verdict.GO.value, Choice.MAKE.value, True, "dot: decided by a person"],
             ],

@@ -194,7 +194,7 @@ def test_a_refused_reagent_gets_no_well_product_or_condition(out: Path) -> None:
         assert [row[c] for c in ("product", "remedies", "log10_k_rel", "low", "high")] == [""] * 5
     (left,) = [r for r in rows_of(out / "electrophiles_left_out.csv") if r["id"] == "E10"]
     assert left[f"{PREFIX}remedies"] == ""
-    assert "Refuse" in left[f"{PREFIX}hazards"]
+    assert "Not to be used here" in left[f"{PREFIX}hazards"]
 
 
 def test_an_old_decision_to_make_does_not_lift_a_refusal(tmp_path: Path) -> None:
