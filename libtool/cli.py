@@ -35,7 +35,7 @@ exit codes:
   {FAULT}    a fault of the program itself
   {BAD_INPUT}    a list, an option or a folder cannot be used; one sentence says why
   {NOTHING_TO_MAKE}    the files are written, but no pair is to be made
-  {INTERRUPTED}  stopped with Ctrl-C; earlier files are left as they were
+  {INTERRUPTED}  stopped with Ctrl-C, {TERMINATED} by a signal; earlier files are left as they were
 """
 
 _DESCRIPTION = """\
@@ -105,7 +105,7 @@ def _parser() -> argparse.ArgumentParser:
         epilog=_EXIT_CODES,
         formatter_class=argparse.RawDescriptionHelpFormatter,
     )
-    lists = "CSV, TSV, SMI or SDF; the columns of structure and id are found by name and content"
+    lists = "CSV, TSV, XLSX, Parquet, SMI or SDF; the columns of structure and id are found by name and content"
     triage.add_argument("nucleophiles", metavar="NUCLEOPHILES", type=Path, help=f"list of nucleophiles: {lists}")
     triage.add_argument("electrophiles", metavar="ELECTROPHILES", type=Path, help="list of electrophiles, likewise")
     triage.add_argument("--out", metavar="DIR", type=Path, required=True, help="folder for the files")
@@ -175,12 +175,20 @@ def _triage(options: argparse.Namespace) -> int:
     print(f"Plate: {len(wells.wells):,} wells on {wells.plates} plate(s) of {options.wells}.")
     print("\nFiles:", *(f"  {path}" for path in paths), sep="\n")
     print("\nOpen the report in a browser. To decide pair by pair, open the notebook:")
-    print("  python -m jupyter lab notebooks/1_triage.ipynb")
+    print(f"  {_python()} -m jupyter lab notebooks/1_triage.ipynb")
     print(f"\n{CAUTION}", flush=True)
     if not made:
         print("No pair is to be made: pairs.csv says why for each.", file=sys.stderr)
         return NOTHING_TO_MAKE
     return DONE
+
+
+def _python() -> str:
+    """This interpreter, as short as it can be typed from here."""
+    try:
+        return str(Path(sys.executable).relative_to(Path.cwd()))
+    except ValueError:
+        return sys.executable
 
 
 def _check_places(out: Path, decisions: Path, inputs: Sequence[Path]) -> None:
