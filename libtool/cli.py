@@ -184,7 +184,7 @@ def _triage(options: argparse.Namespace) -> int:
 
 
 def _python() -> str:
-    """This interpreter, as short as it can be typed from here."""
+    """Path of the interpreter that runs, as short as it can be typed from here."""
     try:
         return str(Path(sys.executable).relative_to(Path.cwd()))
     except ValueError:

@@ -43,6 +43,7 @@ _SPELLINGS = {
     "celsius": "degC", "n": "mol/L", "m": "mol/L", "mm": "mmol/L", "µm": "umol/L", "um": "umol/L", "da": "g/mol",
     "l": "L", "ml": "mL", "ul": "uL", "µl": "uL", "microl": "uL", "gr": "g", "gram": "g", "grams": "g", "mgs": "mg",
 }  # fmt: skip
+_UNIT = re.compile(r"^[a-zµμ°]{1,12}(?:[/·][a-zµμ°]{1,12})?$", re.I)
 _POINT_EVIDENCE = re.compile(r"\d\.\d{1,2}$|\d\.\d{4,}$|^0\.\d|\d,\d{3}\.\d|\d\.\d+[eE]")
 _COMMA_EVIDENCE = re.compile(r"\d,\d{1,2}$|\d,\d{4,}$|^0,\d|\d\.\d{3},\d|\d,\d+[eE]")
 _COMMA_OR_THOUSANDS = re.compile(r"^\d{1,3}(?:[,.]\d{3})$")
@@ -172,9 +173,13 @@ def _unit(text: str) -> str:
     known = _SPELLINGS.get(spelling)
     if known:
         return known
+    # pint computes what it is given, and a cell is anybody's text: only what
+    # has the form of a unit reaches it.
+    if not _UNIT.match(text.strip()):
+        return ""
     try:
-        return f"{_registry().parse_units(text.strip().replace('·', '*')):~C}" if text.strip() else ""
-    except (pint.PintError, ValueError, TypeError, AttributeError, AssertionError):
+        return f"{_registry().parse_units(text.strip().replace('·', '*')):~C}"
+    except (pint.UndefinedUnitError, pint.OffsetUnitCalculusError):
         return ""
 
 

@@ -20,7 +20,7 @@ from rdkit.Chem import rdMolDescriptors
 from libtool.records import BuildingBlock, ElectrophileSite
 from libtool.reference.tables import number, row, table
 
-__all__ = ["carbon_atoms", "carbon_modifiers", "electrophile_sites", "leaving_group_carbons"]
+__all__ = ["carbon_atoms", "carbon_modifiers", "electrophile_sites", "good_leaving_bonds"]
 
 # A hydrogen counts for nothing here; carbons that activate the C-X bond win
 # over plain ones when one molecule carries two equal leaving groups.
@@ -58,15 +58,14 @@ def electrophile_sites(block: BuildingBlock) -> tuple[ElectrophileSite, ...]:
     return tuple(sorted(chosen, key=lambda s: (-s.log10_odds, s.carbon)))
 
 
-def leaving_group_carbons(mol: Chem.Mol) -> tuple[int, ...]:
-    """Every sp3 carbon with a good leaving group, equivalent ones included."""
-    carbons = {
-        carbon
-        for carbon, _, group in _leaving_groups(mol)
+def good_leaving_bonds(mol: Chem.Mol) -> tuple[tuple[int, int], ...]:
+    """(carbon, first leaving atom) of every good leaving group on sp3 carbon, equivalent ones included."""
+    return tuple(
+        (carbon, leaving)
+        for carbon, leaving, group in _leaving_groups(mol)
         if row("leaving_group_patterns", group)["grade"] == "good"
         and mol.GetAtomWithIdx(carbon).GetHybridization() == Chem.HybridizationType.SP3
-    }
-    return tuple(sorted(carbons))
+    )
 
 
 def carbon_modifiers(site: ElectrophileSite) -> tuple[str, ...]:

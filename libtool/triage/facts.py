@@ -14,7 +14,7 @@ from functools import cache
 
 from rdkit import Chem
 
-from libtool.reaction.electrophiles import leaving_group_carbons
+from libtool.reaction.electrophiles import good_leaving_bonds
 from libtool.reaction.nucleophiles import nucleophile_sites, site_label
 from libtool.records import BuildingBlock, ElectrophileSite, NucleophileSite, RateEstimate, Role
 from libtool.reference.tables import number, row, table
@@ -126,11 +126,11 @@ def unactivated_chloride(block: BuildingBlock, site: ElectrophileSite | None) ->
 
 
 def several_leaving_groups(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
-    """More than one sp3 carbon with a good leaving group, equivalent ones included."""
-    carbons = leaving_group_carbons(block.mol)
-    if len(carbons) < 2:
+    """More than one good leaving group on sp3 carbon, equivalent ones included."""
+    bonds = good_leaving_bonds(block.mol)
+    if len(bonds) < 2:
         return None
-    return _on_electrophile(*carbons, count=str(len(carbons)))
+    return _on_electrophile(*sorted({carbon for carbon, _ in bonds}), count=str(len(bonds)))
 
 
 def defined_stereocentre(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:

@@ -46,6 +46,9 @@ CREATE TABLE decisions (
 );
 CREATE TRIGGER decisions_stay BEFORE UPDATE ON decisions
     BEGIN SELECT RAISE(ABORT, 'decisions are never changed'); END;
+CREATE TRIGGER decisions_are_new BEFORE INSERT ON decisions
+    WHEN EXISTS (SELECT 1 FROM decisions WHERE serial = NEW.serial)
+    BEGIN SELECT RAISE(ABORT, 'decisions are never replaced'); END;
 CREATE TRIGGER decisions_remain BEFORE DELETE ON decisions
     BEGIN SELECT RAISE(ABORT, 'decisions are never deleted'); END;
 """
