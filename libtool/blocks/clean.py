@@ -8,6 +8,7 @@ one compound is refused with a sentence rather than guessed.
 
 from __future__ import annotations
 
+import re
 from collections import Counter
 from dataclasses import dataclass
 from functools import cache
@@ -22,6 +23,14 @@ __all__ = ["Parent", "Refusal", "parent_structure"]
 _LONGEST_TEXT = 20_000
 _MOST_FRAGMENTS = 20
 _MOST_HEAVY_ATOMS = 150
+# One neutral, unlabelled, metal-free component: four rows of five of a vendor
+# list. Nothing but parsing is left to do for it.
+_PLAIN = re.compile(
+    r"(?:[BCNOPSFIbcnops]|Cl|Br|[=#/\\()0-9%]|\[(?:nH|C@@?H?|Si)\]|\[N\+\]\(=O\)\[O-\]|\[O-\]\[N\+\]\(=O\))+"
+)
+# Elements that form organometallic reagents: groups 1 and 2, the d block with
+# zinc, cadmium and mercury, and the metals of groups 13 and 14.
+_METALS = frozenset({3, 4, 11, 12, 13, 19, 20, *range(21, 31), 31, 37, 38, *range(39, 51), 55, 56, *range(57, 84)})
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,9 +73,16 @@ def parent_structure(text: str) -> Parent | Refusal:
     if refusal:
         return refusal
     with rdBase.BlockLogs():
+        if _PLAIN.fullmatch(text.strip()) and (plain := Chem.MolFromSmiles(text.strip())) is not None:
+            return _finished(plain, ())
         mol = _parse(text)
         if isinstance(mol, Refusal):
             return mol
+        if metal := _carbon_bound_metal(mol):
+            return Refusal(
+                f"a carbon-{metal} bond: organometallic reagents are no partners of an SN2 alkylation plate",
+                "Take it off the list, or list the compound it is made from",
+            )
         mol = rdMolStandardize.MetalDisconnector().Disconnect(mol)
         fragments = Chem.GetMolFrags(mol, asMols=True)
         if len(fragments) > _MOST_FRAGMENTS:
@@ -81,6 +97,14 @@ def parent_structure(text: str) -> Parent | Refusal:
         parent = rdMolStandardize.Uncharger().uncharge(parent)
         parent = Chem.RemoveHs(parent)
         return _checked(parent, counterions)
+
+
+def _carbon_bound_metal(mol: Chem.Mol) -> str:
+    """Symbol of a metal bonded to carbon, or empty."""
+    for atom in mol.GetAtoms():
+        if atom.GetAtomicNum() in _METALS and any(n.GetAtomicNum() == 6 for n in atom.GetNeighbors()):
+            return str(atom.GetSymbol())
+    return ""
 
 
 def _refuse_text(text: str) -> Refusal | None:
@@ -190,13 +214,17 @@ def _has_carbon(mol: Chem.Mol) -> bool:
 def _checked(parent: Chem.Mol, counterions: tuple[str, ...]) -> Parent | Refusal:
     if not _has_carbon(parent) and parent.GetNumHeavyAtoms() == 1 and parent.GetAtomWithIdx(0).GetAtomicNum() != 7:
         return Refusal("the row holds a bare atom or ion, not a building block", "Remove the row")
+    if any(a.GetNumRadicalElectrons() for a in parent.GetAtoms()):
+        return Refusal("the structure has an unpaired electron", "Add the missing hydrogen or charge")
+    return _finished(parent, counterions)
+
+
+def _finished(parent: Chem.Mol, counterions: tuple[str, ...]) -> Parent | Refusal:
     if parent.GetNumHeavyAtoms() > _MOST_HEAVY_ATOMS:
         return Refusal(
             f"the molecule has {parent.GetNumHeavyAtoms()} heavy atoms (limit {_MOST_HEAVY_ATOMS})",
             "Building blocks are small molecules: check the row",
         )
-    if any(a.GetNumRadicalElectrons() for a in parent.GetAtoms()):
-        return Refusal("the structure has an unpaired electron", "Add the missing hydrogen or charge")
     smiles = Chem.MolToSmiles(parent)
     # A second reading fixes the atom order, so that equal parents are equal
     # molecules whatever the drawing looked like.
