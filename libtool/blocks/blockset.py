@@ -7,8 +7,10 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from html import escape
 from typing import TYPE_CHECKING
 
+from libtool.assets.drawing import structure_svg
 from libtool.blocks.columns import Columns
 from libtool.blocks.inventory import Container
 from libtool.errors import InputError
@@ -18,6 +20,8 @@ if TYPE_CHECKING:
     import pandas
 
 __all__ = ["BlockSet"]
+
+_SHOWN_BLOCKS = 20
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -105,6 +109,30 @@ class BlockSet:
             columns=["id", "name", "smiles", "counterions", "row", "received"],
         )
 
+    def _repr_html_(self) -> str:
+        """What became of every row, and the first blocks with their structures."""
+        found = [("structure", self.columns.structure), ("id", self.columns.id), ("name", self.columns.name)]
+        found += list(self.columns.others.items())
+        columns = ", ".join(f"{escape(role)}: <code>{escape(name)}</code>" for role, name in found if name)
+        places = {c.block_id: c for c in reversed(self.containers)}
+        lines = "".join(_html_line(block, places[block.id]) for block in self.blocks[:_SHOWN_BLOCKS])
+        more = f"<p>... and {len(self) - _SHOWN_BLOCKS} more.</p>" if len(self) > _SHOWN_BLOCKS else ""
+        issues = "".join(
+            f"<li>{outcome}: {escape(str(issue))}</li>"
+            for outcome, group in (
+                ("rejected", self.rejected),
+                ("duplicate", self.duplicates),
+                ("remark", self.remarks),
+            )
+            for issue in group
+        )
+        head = "<tr><th>id</th><th>name</th><th>structure</th><th>salt</th><th>amount</th><th>place</th></tr>"
+        return (
+            f"<p><b>{escape(self.summary())}</b></p><p>Columns taken as {columns}.</p>"
+            f"<details><summary>{len(self.rejected)} rejected, {len(self.duplicates)} duplicates, "
+            f"{len(self.remarks)} remarks</summary><ul>{issues}</ul></details><table>{head}{lines}</table>{more}"
+        )
+
     @property
     def issues(self) -> pandas.DataFrame:
         """Duplicates, rejected rows and remarks as a table.
@@ -125,3 +153,11 @@ class BlockSet:
             [(i.row, outcome, i.column, i.received, i.reason, i.remedy) for outcome, i in found],
             columns=["row", "outcome", "column", "received", "reason", "remedy"],
         )
+
+
+def _html_line(block: BuildingBlock, container: Container) -> str:
+    amount = f"{container.amount.value:g} {container.amount.unit}" if container.amount else ""
+    drawing = structure_svg(block.mol, {}, f"Structure of {block.id}", 150, 90)
+    cells = (escape(block.id), escape(block.name), f'<div style="background:#fff">{drawing}</div>')
+    texts = (".".join(block.counterions), amount, dict(container.texts).get("place", ""))
+    return "<tr>" + "".join(f"<td>{cell}</td>" for cell in (*cells, *map(escape, texts))) + "</tr>"

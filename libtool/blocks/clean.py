@@ -18,7 +18,7 @@ from rdkit.Chem.MolStandardize import rdMolStandardize
 
 from libtool.reference.tables import table
 
-__all__ = ["Parent", "Refusal", "parent_structure"]
+__all__ = ["Parent", "Refusal", "identity", "parent_structure"]
 
 _LONGEST_TEXT = 20_000
 _MOST_FRAGMENTS = 20
@@ -97,6 +97,18 @@ def parent_structure(text: str) -> Parent | Refusal:
         parent = rdMolStandardize.Uncharger().uncharge(parent)
         parent = Chem.RemoveHs(parent)
         return _checked(parent, counterions)
+
+
+def identity(parent: Parent) -> str:
+    """Key that two drawings of one compound share: the standard InChIKey.
+
+    It does not tell apart tautomers that differ by a mobile hydrogen
+    (3- and 5-methylpyrazole), which is what a bottle does not either. Where
+    InChI has no answer the SMILES stands in.
+    """
+    with rdBase.BlockLogs():
+        key = Chem.MolToInchiKey(parent.mol)  # type: ignore[no-untyped-call]
+    return str(key) or parent.smiles
 
 
 def _carbon_bound_metal(mol: Chem.Mol) -> str:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from libtool.blocks.blockset import BlockSet
-from libtool.blocks.clean import Refusal, parent_structure
+from libtool.blocks.clean import Refusal, identity, parent_structure
 from libtool.blocks.columns import find_columns
 from libtool.blocks.inventory import Container, Shelf
 from libtool.blocks.rows import Source, read_rows
@@ -57,7 +57,7 @@ def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, she
     blocks: list[BuildingBlock] = []
     duplicates: list[RowIssue] = []
     rejected: list[RowIssue] = []
-    row_of_smiles: dict[str, BuildingBlock] = {}
+    row_of_key: dict[str, BuildingBlock] = {}
     row_of_id: dict[str, int] = {}
     for number, cells in rows.rows:
         received = cells[columns.structure]
@@ -68,14 +68,16 @@ def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, she
         # An id goes through as it stands; only a blank one is replaced.
         given = cells[columns.id] if columns.id else ""
         block_id = given if given.strip() else f"row {number}"
-        twin = row_of_smiles.get(parent.smiles)
+        key = identity(parent)
+        twin = row_of_key.get(key)
         if twin:
+            drawn = "" if twin.smiles == parent.smiles else ", drawn as another tautomer"
             duplicates.append(
                 _issue(
                     number,
                     columns.structure,
                     received,
-                    f"the parent structure is the one of {twin.id} (row {twin.row})",
+                    f"the parent structure is the one of {twin.id} (row {twin.row}){drawn}",
                     f"{block_id} counts as another container of {twin.id}; nothing to do",
                 )
             )
@@ -104,7 +106,7 @@ def read_blocks(source: Source, *, mapping: Mapping[str, str] | None = None, she
             columns=tuple(cells.items()),
             mol=parent.mol,
         )
-        row_of_smiles[parent.smiles] = block
+        row_of_key[key] = block
         row_of_id[block_id] = number
         blocks.append(block)
         container, unread = shelf.container(number, cells, block_id, block_id, parent.mol, parent.counterions)

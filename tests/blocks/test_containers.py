@@ -110,3 +110,28 @@ def test_the_printed_weight_is_told_apart(smiles: str, printed: str, fits: str) 
     blocks = read_blocks(pandas.DataFrame({"id": ["a"], "smiles": [smiles], "MW": [printed]}))
     assert blocks.containers[0].weight_fits == fits
     assert bool(blocks.remarks) == (fits == "neither")
+
+
+def test_two_drawings_of_one_compound_are_one_block() -> None:
+    blocks = read_blocks(["Cc1cc[nH]n1", "Cc1ccn[nH]1", "O=c1cccc[nH]1", "Oc1ccccn1"])
+    assert [b.row for b in blocks] == [1, 3]
+    assert all("drawn as another tautomer" in i.reason for i in blocks.duplicates)
+
+
+def test_stereoisomers_stay_apart() -> None:
+    assert len(read_blocks(["C[C@H](Br)C(=O)OC", "C[C@@H](Br)C(=O)OC", "CC(Br)C(=O)OC"])) == 3
+
+
+def test_a_block_set_shows_itself_with_every_row_accounted_for() -> None:
+    hostile = '<img src=x onerror="alert(1)">'
+    blocks = read_blocks(
+        pandas.DataFrame(
+            {"id": ["a", hostile, "c"], "smiles": ["CCN.Cl", "CCCN", "bad("], "amount": ["5 g", "5", "1 g"]}
+        )
+    )
+    text = blocks._repr_html_()
+    assert blocks.summary() in text
+    assert "5000 mg" in text
+    assert text.count("<svg") == 2
+    assert "1 rejected, 0 duplicates, 1 remarks" in text
+    assert "<img" not in text
