@@ -11,6 +11,7 @@ from html import escape
 from typing import TYPE_CHECKING
 
 from libtool.assets.drawing import structure_svg
+from libtool.blocks.clean import counterion_name
 from libtool.blocks.columns import Columns
 from libtool.blocks.inventory import Container
 from libtool.errors import InputError
@@ -159,5 +160,5 @@ def _html_line(block: BuildingBlock, container: Container) -> str:
     amount = f"{container.amount.value:g} {container.amount.unit}" if container.amount else ""
     drawing = structure_svg(block.mol, {}, f"Structure of {block.id}", 150, 90)
     cells = (escape(block.id), escape(block.name), f'<div style="background:#fff">{drawing}</div>')
-    texts = (".".join(block.counterions), amount, dict(container.texts).get("place", ""))
+    texts = (", ".join(map(counterion_name, block.counterions)), amount, dict(container.texts).get("place", ""))
     return "<tr>" + "".join(f"<td>{cell}</td>" for cell in (*cells, *map(escape, texts))) + "</tr>"

@@ -18,7 +18,7 @@ from rdkit.Chem.MolStandardize import rdMolStandardize
 
 from libtool.reference.tables import table
 
-__all__ = ["Parent", "Refusal", "identity", "parent_structure"]
+__all__ = ["Parent", "Refusal", "counterion_name", "identity", "parent_structure"]
 
 _LONGEST_TEXT = 20_000
 _MOST_FRAGMENTS = 20
@@ -111,6 +111,12 @@ def identity(parent: Parent) -> str:
     return str(key) or parent.smiles
 
 
+def counterion_name(smiles: str) -> str:
+    """Name of a salt or solvent component, such as "hydrogen chloride"; the SMILES where it has none."""
+    mol = _read(smiles, sanitise=True)
+    return smiles if mol is None else _known_counterions().get(_neutral_key(mol), smiles)
+
+
 def _carbon_bound_metal(mol: Chem.Mol) -> str:
     """Symbol of a metal bonded to carbon, or empty."""
     for atom in mol.GetAtoms():
@@ -190,8 +196,11 @@ def _plain_labels(mol: Chem.Mol) -> None:
 
 
 @cache
-def _known_counterions() -> frozenset[str]:
-    return frozenset(_neutral_key(Chem.MolFromSmiles(row["smiles"])) for row in table("counterions"))
+def _known_counterions() -> dict[str, str]:
+    """Name of each known component by its neutral SMILES."""
+    return {
+        _neutral_key(Chem.MolFromSmiles(row["smiles"])): row["key"].replace("_", " ") for row in table("counterions")
+    }
 
 
 def _neutral_key(fragment: Chem.Mol) -> str:

@@ -10,14 +10,14 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
-from functools import cache
 
 from rdkit import Chem
 
+from libtool.blocks.clean import counterion_name
 from libtool.reaction.electrophiles import good_leaving_bonds
 from libtool.reaction.nucleophiles import nucleophile_sites, site_label
 from libtool.records import BuildingBlock, ElectrophileSite, NucleophileSite, RateEstimate, Role
-from libtool.reference.tables import number, row, table
+from libtool.reference.tables import number, row
 
 __all__ = ["ELECTROPHILE_FACTS", "NUCLEOPHILE_FACTS", "PAIR_FACTS", "Finding"]
 
@@ -195,17 +195,8 @@ def _salt_words(block: BuildingBlock) -> dict[str, str]:
     acids = [c for c in block.counterions if _protons(c)]
     if not acids:
         return {}
-    names = sorted({_counterion_names().get(_canonical(a), a) for a in acids})
+    names = sorted({counterion_name(a) for a in acids})
     return {"salt": " and ".join(names), "equivalents": str(sum(map(_protons, acids)))}
-
-
-def _canonical(smiles: str) -> str:
-    return str(Chem.MolToSmiles(Chem.MolFromSmiles(smiles)))
-
-
-@cache
-def _counterion_names() -> dict[str, str]:
-    return {_canonical(r["smiles"]): r["key"].replace("_", " ") for r in table("counterions")}
 
 
 _ACID_PROTON = Chem.MolFromSmarts(
