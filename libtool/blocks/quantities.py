@@ -183,11 +183,23 @@ def _unit(text: str) -> str:
         return ""
 
 
-def _converted(number: float, unit: str, wanted: str) -> float | None:
+@cache
+def _scale(unit: str, wanted: str) -> tuple[float, float] | None:
+    """Factor and offset from one unit to another, None where they do not measure the same.
+
+    Every unit met here is linear in the wanted one, so two points fix it; a
+    long list would spend most of its time in pint otherwise.
+    """
     import pint
 
     registry = _registry()
     try:
-        return float(registry.Quantity(number, unit).to(wanted).magnitude)
+        zero, one = (float(registry.Quantity(point, unit).to(wanted).magnitude) for point in (0.0, 1.0))
     except (pint.DimensionalityError, pint.UndefinedUnitError):
         return None
+    return one - zero, zero
+
+
+def _converted(number: float, unit: str, wanted: str) -> float | None:
+    scale = _scale(unit, wanted)
+    return None if scale is None else number * scale[0] + scale[1]
