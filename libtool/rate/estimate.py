@@ -115,7 +115,7 @@ def electrophile_terms(site: ElectrophileSite) -> tuple[Term, ...] | NotAvailabl
     if class_row["kind"] == "blocked":
         return NotAvailable(
             what="relative SN2 rate",
-            reason=f"the leaving group sits on a {class_row['label']}: SN2 rates do not describe it",
+            reason=f"SN2 rates do not describe this carbon: {class_row['label']}",
             missing="no SN2 reaction to estimate",
         )
     terms = [_term("carbon", site.carbon_class)]

@@ -171,9 +171,27 @@ def acylating_group(block: BuildingBlock, site: ElectrophileSite | None) -> Find
     return _on_electrophile(*(m[0] for m in matches)) if matches else None
 
 
+_STRAINED_RING = Chem.MolFromSmarts("[CX4;r3]1[CX4;r3][O,S,N;r3]1")
+
+
+def strained_ring(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
+    """Epoxide, aziridine or thiirane and no leaving group."""
+    return None if site else _ring_of_three(block)
+
+
+def strained_ring_besides(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
+    """Epoxide, aziridine or thiirane beside a leaving group."""
+    return _ring_of_three(block) if site else None
+
+
+def _ring_of_three(block: BuildingBlock) -> Finding | None:
+    match = block.mol.GetSubstructMatch(_STRAINED_RING)
+    return _on_electrophile(*match) if match else None
+
+
 def no_electrophilic_site(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
-    """Nothing that leaves."""
-    return None if site else _on_electrophile()
+    """Nothing that leaves, and no ring that opens."""
+    return None if site or _ring_of_three(block) else _on_electrophile()
 
 
 # --- nucleophile ----------------------------------------------------------
@@ -193,10 +211,12 @@ def electrophile_salt(block: BuildingBlock, site: ElectrophileSite | None) -> Fi
 
 def _salt_words(block: BuildingBlock) -> dict[str, str]:
     acids = [c for c in block.counterions if _protons(c)]
-    if not acids:
+    # The counter-ion of a permanent cation brought no proton along.
+    equivalents = sum(map(_protons, acids)) - max(0, Chem.GetFormalCharge(block.mol))
+    if equivalents <= 0:
         return {}
     names = sorted({counterion_name(a) for a in acids})
-    return {"salt": " and ".join(names), "equivalents": str(sum(map(_protons, acids)))}
+    return {"salt": " and ".join(names), "equivalents": str(equivalents)}
 
 
 _ACID_PROTON = Chem.MolFromSmarts(
@@ -351,7 +371,7 @@ def _named(*functions: Callable[..., Finding | None]) -> dict[str, Callable[...,
 ELECTROPHILE_FACTS: Mapping[str, ElectrophileFact] = _named(
     beta_branches, bridgehead, plain_tertiary, not_a_triflate, a_triflate, poor_leaving_group, unactivated_chloride,
     several_leaving_groups, acylating_group, electrophile_salt, defined_stereocentre, racemisable, self_reactive,
-    no_electrophilic_site,
+    strained_ring, strained_ring_besides, no_electrophilic_site,
 )  # fmt: skip
 NUCLEOPHILE_FACTS: Mapping[str, NucleophileFact] = _named(
     acid_salt, no_nucleophilic_site, several_nucleophilic_sites, regioisomers, nitrogen_or_oxygen
