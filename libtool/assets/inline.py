@@ -15,9 +15,9 @@ from importlib import resources
 
 from libtool.assets.threedmol import script_gzip
 
-__all__ = ["loader_html"]
+__all__ = ["loader_html", "scene_script"]
 
-_SLOT = "GZIP_BASE64"
+_PACKED_SLOT, _SHARED_SLOT = "GZIP_BASE64", "SHARED"
 
 
 @cache
@@ -38,6 +38,16 @@ def loader_html() -> str:
     LibtoolError
         The package was built without 3Dmol.js.
     """
-    script = resources.files("libtool.assets").joinpath("loader.js").read_text("utf-8")
+    loader = resources.files("libtool.assets").joinpath("loader.js").read_text("utf-8")
+    # The comment at the top of the loader names the slot as well.
+    code = loader[loader.index("(() =>") :].replace(_SHARED_SLOT, scene_script())
     packed = base64.b64encode(script_gzip()).decode("ascii")
-    return f"<script>\n{script.replace(_SLOT, packed)}</script>\n"
+    return f"<script>\n{code.replace(_PACKED_SLOT, packed)}</script>\n"
+
+
+@cache
+def scene_script() -> str:
+    """Functions `replay` and `loadLibrary` of scene.js, as plain script text for a page or a module."""
+    return (
+        resources.files("libtool.assets").joinpath("scene.js").read_text("utf-8").replace("export function", "function")
+    )

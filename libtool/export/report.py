@@ -21,6 +21,7 @@ from string import Template
 from libtool import __version__
 from libtool.approach import approach
 from libtool.approach.scene import LEGEND, Scene, scene
+from libtool.assets.inline import scene_script
 from libtool.assets.threedmol import licence_text, script_gzip, version
 from libtool.errors import LibtoolError
 from libtool.export import sections
@@ -238,8 +239,7 @@ def _library() -> tuple[str, str]:
 
 
 def _script() -> str:
-    shared = resources.files("libtool.assets").joinpath("scene.js").read_text("utf-8")
-    return f"\n(() => {{\n{shared.replace('export function', 'function')}\n{_asset('report.js')}}})();\n"
+    return f"\n(() => {{\n{scene_script()}\n{_asset('report.js')}}})();\n"
 
 
 def _asset(name: str) -> str:

@@ -9,6 +9,7 @@ import anywidget
 import traitlets
 
 from libtool.approach.scene import LEGEND, Scene
+from libtool.assets.inline import scene_script
 from libtool.assets.threedmol import script_gzip
 
 __all__ = ["ApproachViewer"]
@@ -16,9 +17,8 @@ __all__ = ["ApproachViewer"]
 
 def _module() -> str:
     """JavaScript of the viewer, with the shared scene code in front."""
-    shared = resources.files("libtool.assets").joinpath("scene.js").read_text("utf-8")
     own = resources.files("libtool.views").joinpath("approach_viewer.js").read_text("utf-8")
-    return shared.replace("export function", "function") + "\n" + own
+    return f"{scene_script()}\n{own}"
 
 
 class ApproachViewer(anywidget.AnyWidget):
