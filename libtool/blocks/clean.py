@@ -113,8 +113,9 @@ def identity(parent: Parent) -> str:
 
 def counterion_name(smiles: str) -> str:
     """Name of a salt or solvent component, such as "hydrogen chloride"; the SMILES where it has none."""
-    mol = _read(smiles, sanitise=True)
-    return smiles if mol is None else _known_counterions().get(_neutral_key(mol), smiles)
+    with rdBase.BlockLogs():
+        mol = _read(smiles, sanitise=True)
+        return smiles if mol is None else _known_counterions().get(_neutral_key(mol), smiles)
 
 
 def _carbon_bound_metal(mol: Chem.Mol) -> str:

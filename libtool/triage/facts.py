@@ -141,11 +141,11 @@ def defined_stereocentre(block: BuildingBlock, site: ElectrophileSite | None) ->
     return _on_electrophile(site.carbon) if defined else None
 
 
-_ACIDIC_NEIGHBOUR = Chem.MolFromSmarts("[CX4;!H0]-[$([CX3]=[OX1]),$(C#N)]")
+_ACIDIC_NEIGHBOUR = Chem.MolFromSmarts("[CX4;!H0]-[$([CX3]=[OX1]),$(C#N),c]")
 
 
 def racemisable(block: BuildingBlock, site: ElectrophileSite | None) -> Finding | None:
-    """Defined stereocentre with an acidic hydrogen next to a carbonyl or nitrile."""
+    """Defined stereocentre next to a carbonyl, nitrile or aryl group."""
     found = defined_stereocentre(block, site)
     if found is None or site is None:
         return None
@@ -301,11 +301,20 @@ def over_alkylation(n: NucleophileSite, e: ElectrophileSite, rate: RateEstimate 
 
 
 def double_alkylation(n: NucleophileSite, e: ElectrophileSite, rate: RateEstimate | None) -> Finding | None:
-    """Any other nucleophile with two hydrogens on the reacting atom."""
-    if n.kind in _AMINES or n.hydrogens < 2 or rate is None:
+    """Any other nucleophile that can react twice: two hydrogens, or a second site of the same kind."""
+    if rate is None or ((n.kind in _AMINES or n.hydrogens < 2) and not _has_equivalent_site(n)):
         return None
     label = site_label(n)
     return _on_nucleophile(n.atom, nucleophile=label[0].upper() + label[1:])
+
+
+def _has_equivalent_site(site: NucleophileSite) -> bool:
+    """Another atom that the symmetry of the block makes equal to the reacting one, as in piperazine."""
+    if site.form.GetAtomWithIdx(site.atom).GetIsAromatic():
+        # The two nitrogens of an azole share one hydrogen.
+        return False
+    ranks = list(Chem.CanonicalRankAtoms(site.block.mol, breakTies=False))
+    return ranks.count(ranks[site.atom]) > 1
 
 
 # Substrate classes of the published SN2/E2 ratios, by key of sn2_e2_ratios.

@@ -213,7 +213,7 @@ def _electrophiles(blocks: BlockSet) -> tuple[Reagent, ...]:
     hazards = {block.id: structure_hazards(block.mol, "reagent") for block in blocks}
     # A reagent that is refused or needs an approval is nobody's remedy.
     usable = (found[0] for i, found in sites.items() if found and not _restricted(hazards[i]))
-    twins = better_twins(usable)
+    twins = better_twins(usable, {i: strictest(found) for i, found in hazards.items()})
     reagents: list[Reagent] = []
     for block in blocks:
         found = sites[block.id]

@@ -96,7 +96,7 @@ def pair_head(pair: Pair, decision: Decision | None) -> str:
 
 def pair_reasons(pair: Pair) -> str:
     """Flags with remedies and sources, cautions, estimated rate; as HTML."""
-    parts = _flags(pair.flags) + _hazards(pair.hazards) + _estimate(pair.rate)
+    parts = _flags(pair.flags, refused=pair.verdict is Verdict.REFUSED) + _hazards(pair.hazards) + _estimate(pair.rate)
     return f'<div style="line-height:1.35">{parts}</div>'
 
 
@@ -148,14 +148,15 @@ def _outcome(pair: Pair) -> str:
     return f"<div>{text}</div>"
 
 
-def _flags(flags: tuple[Flag, ...]) -> str:
+def _flags(flags: tuple[Flag, ...], *, refused: bool) -> str:
     if not flags:
         return "<p>No flag.</p>"
     lines = [
         f'<li style="margin:3px 0"><b style="color:{_LEVEL_TONES[f.level]}">{escape(f.title)}</b> '
         f"({_LEVEL_WORDS[f.level]}, {f.role.value}). {escape(f.sentence)}<br>"
-        f"<b>Remedy:</b> {escape(f.remedy.sentence)} "
-        f'<span style="opacity:.75">Source: {escape(cite(f.source))}.</span></li>'
+        # What is refused gets no recipe.
+        + ("" if refused else f"<b>Remedy:</b> {escape(f.remedy.sentence)} ")
+        + f'<span style="opacity:.75">Source: {escape(cite(f.source))}.</span></li>'
         for f in flags
     ]
     return f'<ul style="margin:4px 0;padding-left:18px">{"".join(lines)}</ul>'
