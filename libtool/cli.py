@@ -176,6 +176,7 @@ def _triage(options: argparse.Namespace) -> int:
     print("\nFiles:", *(f"  {path}" for path in paths), sep="\n")
     print("\nOpen the report in a browser. To decide pair by pair, open the notebook:")
     print(f"  {_python()} -m jupyter lab notebooks/1_triage.ipynb")
+    print("  (its first cell names the lists and the folder: put your own there)")
     print(f"\n{CAUTION}", flush=True)
     if not made:
         print("No pair is to be made: pairs.csv says why for each.", file=sys.stderr)

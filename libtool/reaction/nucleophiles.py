@@ -114,6 +114,7 @@ def _regiochemistry_patterns() -> tuple[tuple[str, Chem.Mol], ...]:
         "azole_away_from_fusion": "[n;r5;!$(n:[c;R2])]1:a:[a;R2]:[a;R2]:a1",
         "azole_flanked_by_carbons": "[n;r5]1:[c;!R2]:n:n:[c;!R2]1",
         "purine_n7": "[n;r5]1:[c;R2;!$(c(:[n;r6]):n)]:[c;R2;$(c:[n;r6])]:[n;r5]:c1",
+        "xanthine_n9": "[n;r5]1:[c;R2;$(c:[nX3;r6])]:[c;R2;$(c:c=[O,S])]:[n;r5]:c1",
         "azinone_away_from_carbonyl": "[nX3;H1;r6;!$(n:c=[O,S])]1:[c;!R2]:n:c(=[O,S]):a:a1",
         "azinone_oxygen": "[OX2;H1]-[c;$(c:n),$(c1aanaa1)]",
     }

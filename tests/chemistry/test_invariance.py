@@ -14,6 +14,7 @@ from rdkit import Chem
 from rdkit.Chem import rdMolDescriptors
 from rdkit.Chem.MolStandardize import rdMolStandardize
 
+from libtool.blocks import read_blocks
 from libtool.rate import estimate_rate
 from libtool.reaction import electrophile_sites, make_products, nucleophile_sites
 from libtool.records import Conditions, RateEstimate
@@ -183,3 +184,11 @@ def test_shares_add_up_and_fall(record: dict[str, str]) -> None:
     assert not shares or sum(shares) == pytest.approx(1.0, abs=1e-9)
     assert [p.rank for p in found] == list(range(1, len(found) + 1))
     assert len({p.smiles for p in found}) == len(found)
+
+
+@pytest.mark.parametrize("drawn", ["Cn1c(=O)c2[nH]cnc2n(C)c1=O", "Cn1c(=O)c2nc[nH]c2n(C)c1=O"])
+def test_theophylline_gives_caffeine(drawn: str) -> None:
+    """Caffeine is the product of methylating theophylline, in every textbook on xanthines."""
+    pair = read_blocks([drawn, "CI"])
+    first = make_products(pair["row 1"], pair["row 2"])[0]
+    assert first.smiles == Chem.CanonSmiles("Cn1c(=O)c2c(ncn2C)n(C)c1=O")
